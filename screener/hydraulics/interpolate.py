@@ -1,0 +1,145 @@
+"""Reading curves: a cubic through the points with three-point slopes, exact on quadratics.
+
+A slope is limited, to three times the smaller neighbouring secant, only where the curve would
+otherwise stop being monotone between monotone points (the bound is that of F. N. Fritsch and
+R. E. Carlson, SIAM J. Numer. Anal. 17(2), 1980, section 3). The usual monotone cubic bends every
+quadratic; this one does not.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from screener.model.arrays import Bools, Floats, Ints
+
+
+def slopes(*, x: Floats, y: Floats) -> Floats:
+    """Slopes of the cubic at its points.
+
+    x, y : (c, n) rising x, n >= 2, without NaN.  Returns (c, n) [unit of y per unit of x].
+
+    >>> x = np.array([[0.0, 1.0, 3.0, 4.0]])
+    >>> slopes(x=x, y=9.0 - x**2)
+    array([[ 0., -2., -6., -8.]])
+    """
+    step = np.diff(x, axis=1)
+    secant = np.diff(y, axis=1) / step
+    if x.shape[1] == 2:
+        return np.repeat(secant, 2, axis=1)
+    before = np.concatenate([secant[:, :1], secant], axis=1)
+    after = np.concatenate([secant, secant[:, -1:]], axis=1)
+    step_before = np.concatenate([step[:, :1], step], axis=1)
+    step_after = np.concatenate([step, step[:, -1:]], axis=1)
+    slope = (before * step_after + after * step_before) / (step_before + step_after)
+    slope[:, 0] = secant[:, 0] + (secant[:, 0] - secant[:, 1]) * step[:, 0] / (step[:, 0] + step[:, 1])
+    slope[:, -1] = secant[:, -1] + (secant[:, -1] - secant[:, -2]) * step[:, -1] / (step[:, -1] + step[:, -2])
+    return _limited(slope, before, after)
+
+
+def station_slopes(values: Floats) -> Floats:
+    """Slopes of evenly spaced stations, per station; a NaN neighbour counts as the end of the data.
+
+    values : (c, k).  Returns (c, k), NaN where the value itself or both neighbours are NaN.
+    """
+    missing = np.full((len(values), 1), np.nan)
+    secant = np.diff(values, axis=1)
+    before = np.concatenate([missing, secant], axis=1)
+    after = np.concatenate([secant, missing], axis=1)
+    first, last = np.isnan(before), np.isnan(after)
+    slope = (before + after) / 2
+    if first.any() or last.any():
+        next_after = np.concatenate([secant[:, 1:], missing, missing], axis=1)
+        next_before = np.concatenate([missing, missing, secant[:, :-1]], axis=1)
+        next_after = np.where(np.isnan(next_after), after, next_after)
+        next_before = np.where(np.isnan(next_before), before, next_before)
+        slope = np.where(first, 1.5 * after - 0.5 * next_after, slope)
+        slope = np.where(last, 1.5 * before - 0.5 * next_before, slope)
+        before = np.where(first, after, before)
+        after = np.where(last, before, after)
+    return _limited(slope, before, after)
+
+
+def _limited(slope: Floats, before: Floats, after: Floats) -> Floats:
+    bound = 3 * np.minimum(np.abs(before), np.abs(after))
+    same_way = before * after >= 0
+    low = np.where(after + before < 0, -bound, 0.0)
+    high = np.where(after + before > 0, bound, 0.0)
+    return np.where(same_way, np.minimum(np.maximum(slope, low), high), slope)
+
+
+def through_points(*, x: Floats, y: Floats, at: Floats) -> Floats:
+    """The cubic through points, at other places; outside the points it continues its first or last piece.
+
+    x, y : (c, n) rising x, n >= 2, without NaN;  at : (c, k).  Returns (c, k).
+
+    >>> x = np.array([[0.0, 1.0, 3.0]])
+    >>> through_points(x=x, y=9.0 - x**2, at=np.array([[0.5, 2.0]]))
+    array([[8.75, 5.  ]])
+    """
+    slope = slopes(x=x, y=y)
+    cell = np.zeros(at.shape, np.int64)
+    for column in range(1, x.shape[1] - 1):
+        cell += at >= x[:, column, None]
+    rows = np.arange(len(x))[:, None]
+    width = x[rows, cell + 1] - x[rows, cell]
+    t = (at - x[rows, cell]) / width
+    return _cubic(
+        y[rows, cell], y[rows, cell + 1], slope[rows, cell] * width, slope[rows, cell + 1] * width, t
+    )
+
+
+def _cubic(y0: Floats, y1: Floats, m0: Floats, m1: Floats, t: Floats) -> Floats:
+    rise = y1 - y0
+    return (((m0 + m1 - 2 * rise) * t + (3 * rise - 2 * m0 - m1)) * t + m0) * t + y0
+
+
+def value(values: Floats, slope: Floats, rows: Ints, position: Floats) -> Floats:
+    """Read curves at positions counted in stations.
+
+    values, slope : (c, k);  rows : int, broadcast with position;  position : 0 to k - 1.
+    Returns the shape of `position`.
+    """
+    base, t = _cells(values.shape[1], rows, position)
+    y0 = values.ravel().take(base)
+    rise = values.ravel().take(base + 1) - y0
+    m0 = slope.ravel().take(base)
+    m1 = slope.ravel().take(base + 1)
+    return (((m0 + m1 - 2 * rise) * t + (3 * rise - 2 * m0 - m1)) * t + m0) * t + y0
+
+
+def value_and_slope(values: Floats, slope: Floats, rows: Ints, position: Floats) -> tuple[Floats, Floats]:
+    """As `value`, with the derivative per station."""
+    base, t = _cells(values.shape[1], rows, position)
+    y0 = values.ravel().take(base)
+    rise = values.ravel().take(base + 1) - y0
+    m0 = slope.ravel().take(base)
+    m1 = slope.ravel().take(base + 1)
+    cubic = m0 + m1 - 2 * rise
+    square = 3 * rise - 2 * m0 - m1
+    return ((cubic * t + square) * t + m0) * t + y0, (3 * cubic * t + 2 * square) * t + m0
+
+
+def _cells(stations: int, rows: Ints, position: Floats) -> tuple[Ints, Floats]:
+    cell = np.minimum(position.astype(np.int64), stations - 2)
+    return rows * stations + cell, position - cell
+
+
+def vertex(*, x: Floats, y: Floats, best: Ints) -> tuple[Floats, Bools]:
+    """Place of the maximum, by the parabola through the three points around the highest one.
+
+    x, y : (c, n);  best : (c,) int, column of the highest point.
+    Returns (c,) place and (c,) whether it lies inside; at the first or last point it is not known.
+
+    >>> x = np.array([[1.0, 2.0, 4.0]])
+    >>> vertex(x=x, y=5 - (x - 2.4) ** 2, best=np.array([1]))
+    (array([2.4]), array([ True]))
+    """
+    inside = (best > 0) & (best < x.shape[1] - 1)
+    middle = np.clip(best, 1, x.shape[1] - 2)
+    rows = np.arange(len(x))
+    x0, x1, x2 = (x[rows, middle + offset] for offset in (-1, 0, 1))
+    y0, y1, y2 = (y[rows, middle + offset] for offset in (-1, 0, 1))
+    left, right = (y1 - y0) / (x1 - x0), (y2 - y1) / (x2 - x1)
+    bend = np.where(left > right, left - right, 1.0)
+    place = (x0 + x1) / 2 + left * (x2 - x0) / (2 * bend)
+    return np.clip(np.where(left > right, place, x1), x0, x2), inside

@@ -1,0 +1,1 @@
+"""Liquids whose properties follow from their temperature, one module each."""

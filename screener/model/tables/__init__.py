@@ -1,0 +1,1 @@
+"""Tables that standards lay down: motor sizes and acceptance grades."""
