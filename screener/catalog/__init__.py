@@ -1,0 +1,1 @@
+"""Pump catalogs: JSON files into entries, and entries into the table that is screened."""
