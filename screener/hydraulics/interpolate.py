@@ -39,24 +39,39 @@ def slopes(*, x: Floats, y: Floats) -> Floats:
 def station_slopes(values: Floats) -> Floats:
     """Slopes of evenly spaced stations, per station; a NaN neighbour counts as the end of the data.
 
-    values : (c, k).  Returns (c, k), NaN where the value itself or both neighbours are NaN.
+    values : (c, k), k >= 3.  Returns (c, k), NaN where the value itself or both neighbours are NaN.
     """
+    secant = np.diff(values, axis=1)
+    size = np.abs(secant)
+    before, after = secant[:, :-1], secant[:, 1:]
+    slope = np.empty_like(values)
+    twice = before + after
+    np.multiply(twice, 0.5, out=slope[:, 1:-1])
+    rows, columns = np.nonzero(np.abs(twice) > 6 * np.minimum(size[:, :-1], size[:, 1:]))
+    slope[rows, columns + 1] = _limited(slope[rows, columns + 1], before[rows, columns], after[rows, columns])
+    for end, beside in ((0, 1), (-1, -2)):
+        outer = secant[:, end]
+        slope[:, end] = _limited(1.5 * outer - 0.5 * secant[:, beside], outer, outer)
+    gaps = np.flatnonzero(np.isnan(slope.sum(axis=1)))
+    gaps = gaps[~np.isnan(values[gaps]).all(axis=1)]
+    if gaps.size:
+        slope[gaps] = _slopes_with_gaps(values[gaps])
+    return slope
+
+
+def _slopes_with_gaps(values: Floats) -> Floats:
     missing = np.full((len(values), 1), np.nan)
     secant = np.diff(values, axis=1)
     before = np.concatenate([missing, secant], axis=1)
     after = np.concatenate([secant, missing], axis=1)
+    next_after = np.concatenate([secant[:, 1:], missing, missing], axis=1)
+    next_before = np.concatenate([missing, missing, secant[:, :-1]], axis=1)
+    next_after = np.where(np.isnan(next_after), after, next_after)
+    next_before = np.where(np.isnan(next_before), before, next_before)
     first, last = np.isnan(before), np.isnan(after)
-    slope = (before + after) / 2
-    if first.any() or last.any():
-        next_after = np.concatenate([secant[:, 1:], missing, missing], axis=1)
-        next_before = np.concatenate([missing, missing, secant[:, :-1]], axis=1)
-        next_after = np.where(np.isnan(next_after), after, next_after)
-        next_before = np.where(np.isnan(next_before), before, next_before)
-        slope = np.where(first, 1.5 * after - 0.5 * next_after, slope)
-        slope = np.where(last, 1.5 * before - 0.5 * next_before, slope)
-        before = np.where(first, after, before)
-        after = np.where(last, before, after)
-    return _limited(slope, before, after)
+    slope = np.where(first, 1.5 * after - 0.5 * next_after, (before + after) / 2)
+    slope = np.where(last, 1.5 * before - 0.5 * next_before, slope)
+    return _limited(slope, np.where(first, after, before), np.where(last, before, after))
 
 
 def _limited(slope: Floats, before: Floats, after: Floats) -> Floats:
@@ -99,29 +114,64 @@ def value(values: Floats, slope: Floats, rows: Ints, position: Floats) -> Floats
     values, slope : (c, k);  rows : int, broadcast with position;  position : 0 to k - 1.
     Returns the shape of `position`.
     """
-    base, t = _cells(values.shape[1], rows, position)
-    y0 = values.ravel().take(base)
-    rise = values.ravel().take(base + 1) - y0
-    m0 = slope.ravel().take(base)
-    m1 = slope.ravel().take(base + 1)
-    return (((m0 + m1 - 2 * rise) * t + (3 * rise - 2 * m0 - m1)) * t + m0) * t + y0
+    return value_in(values.ravel(), slope.ravel(), *_cells(values.shape[1], rows, position))
 
 
 def value_and_slope(values: Floats, slope: Floats, rows: Ints, position: Floats) -> tuple[Floats, Floats]:
     """As `value`, with the derivative per station."""
-    base, t = _cells(values.shape[1], rows, position)
-    y0 = values.ravel().take(base)
-    rise = values.ravel().take(base + 1) - y0
-    m0 = slope.ravel().take(base)
-    m1 = slope.ravel().take(base + 1)
-    cubic = m0 + m1 - 2 * rise
-    square = 3 * rise - 2 * m0 - m1
-    return ((cubic * t + square) * t + m0) * t + y0, (3 * cubic * t + 2 * square) * t + m0
+    return value_and_slope_in(values.ravel(), slope.ravel(), *_cells(values.shape[1], rows, position))
 
 
 def _cells(stations: int, rows: Ints, position: Floats) -> tuple[Ints, Floats]:
     cell = np.minimum(position.astype(np.int64), stations - 2)
     return rows * stations + cell, position - cell
+
+
+def value_once(values: Floats, position: Floats, rows: Ints) -> Floats:
+    """As `value` with the slopes of `station_slopes`, which are worked out just where they are needed.
+
+    values : (n, k), k >= 4;  position, rows : (c,)
+    """
+    first, last = rows * values.shape[1], values.shape[1] - 1
+    cell = np.minimum(position.astype(np.int64), last - 1)
+    inner = np.minimum(np.maximum(cell, 1), last - 2)
+    y = [values.ravel().take(first + (inner + offset)) for offset in (-1, 0, 1, 2)]
+    before, within, after = y[1] - y[0], y[2] - y[1], y[3] - y[2]
+    m0 = _limited((before + within) / 2, before, within)
+    m1 = _limited((within + after) / 2, within, after)
+    result = _cubic(y[1], y[2], m0, m1, position - inner)
+    ends = np.flatnonzero((inner != cell) | np.isnan(result))  # there the slopes need more neighbours
+    if ends.size:
+        around = cell[ends, None] + np.arange(-2, 4)
+        known = (around >= 0) & (around <= last)
+        near = np.where(known, values[rows[ends, None], np.where(known, around, 0)], np.nan)
+        at = np.arange(len(ends)) * 6 + 2
+        result[ends] = value_in(near.ravel(), station_slopes(near).ravel(), at, position[ends] - cell[ends])
+    return result
+
+
+def value_in(values: Floats, slope: Floats, cell: Ints, t: Floats) -> Floats:
+    """As `value`, in curves one behind the other.
+
+    cell : int, station left of each place;  t : 0 to 1, how far after it
+    """
+    y0, c1, c2, c3 = polynomial(values, slope, cell)
+    return ((c3 * t + c2) * t + c1) * t + y0
+
+
+def value_and_slope_in(values: Floats, slope: Floats, cell: Ints, t: Floats) -> tuple[Floats, Floats]:
+    """As `value_in`, with the derivative per station."""
+    y0, c1, c2, c3 = polynomial(values, slope, cell)
+    return ((c3 * t + c2) * t + c1) * t + y0, (3 * c3 * t + 2 * c2) * t + c1
+
+
+def polynomial(values: Floats, slope: Floats, cell: Ints) -> tuple[Floats, Floats, Floats, Floats]:
+    """Coefficients of t^0 to t^3 between two stations; arguments as for `value_in`."""
+    after = cell + 1
+    y0, c1 = values.take(cell), slope.take(cell)
+    rise = values.take(after) - y0
+    c3 = c1 + slope.take(after) - 2 * rise
+    return y0, c1, rise - c1 - c3, c3
 
 
 def vertex(*, x: Floats, y: Floats, best: Ints) -> tuple[Floats, Bools]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import fields, replace
 
 import numpy as np
@@ -33,35 +33,38 @@ def trimmed(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Flo
     flow_low, flow_high = cut_low**law_flow, cut_high**law_flow
     head_low, head_high = cut_low**law_head, cut_high**law_head
     nearest = np.where(weight < 0.5, cut_low, cut_high)
-    outside = low == high
-    lost = table.efficiency_loss[model] * np.where(outside, np.maximum(1 - nearest, 0), 0)
+    lost = table.efficiency_loss[model] * np.where(low == high, np.maximum(1 - nearest, 0), 0)
     ratio = speed_ratio
+    between = np.flatnonzero(weight > 0)
 
-    def mix(below: Floats, above: Floats) -> Floats:
-        shape = (-1,) + (1,) * (below.ndim - 1)
-        share = weight.reshape(shape)
-        return np.where(share == 0, below, (1 - share) * below + share * above)
+    def blend(values: Floats, scale_low: Floats, scale_high: Floats, either: bool = False) -> Floats:
+        """Rows of the tests, scaled, and mixed where a test lies on either side."""
+        shape = (-1,) + (1,) * (values.ndim - 1)
+        result = values.take(low, axis=0) * scale_low.reshape(shape)
+        if between.size:
+            below, share = result[between], weight[between].reshape(shape)
+            above = values.take(high[between], axis=0) * scale_high[between].reshape(shape)
+            mixed = (1 - share) * below + share * above
+            if either:  # where one of them was not measured, the other holds
+                mixed = np.where(np.isnan(below), above, np.where(np.isnan(above), below, mixed))
+            result[between] = mixed
+        return result
 
-    def column(scale: Floats) -> Floats:
-        return scale[:, None]
-
+    same = np.ones(len(model))
+    speed_npsh = ratio ** table.npsh_speed_exponent[model]
+    efficiency = blend(tested.efficiency, same, same)
+    if lost.any():
+        efficiency -= lost[:, None]
     curves = Curves(
         start=np.maximum(tested.start[low] * flow_low, tested.start[high] * flow_high) * ratio,
-        end=mix(tested.end[low] * flow_low, tested.end[high] * flow_high) * ratio,
+        end=blend(tested.end, flow_low * ratio, flow_high * ratio),
         span=tested.span[low] * flow_low * ratio,
-        head=mix(tested.head[low] * column(head_low), tested.head[high] * column(head_high))
-        * column(ratio**2),
-        efficiency=mix(tested.efficiency[low], tested.efficiency[high]) - column(lost),
-        power=mix(
-            tested.power[low] * column(flow_low * head_low),
-            tested.power[high] * column(flow_high * head_high),
-        )
-        * column(ratio**3),
-        npsh_required=_either(mix, tested.npsh_required[low], tested.npsh_required[high])
-        * column(ratio ** table.npsh_speed_exponent[model]),
+        head=blend(tested.head, head_low * ratio**2, head_high * ratio**2),
+        efficiency=efficiency,
+        power=blend(tested.power, flow_low * head_low * ratio**3, flow_high * head_high * ratio**3),
+        npsh_required=blend(tested.npsh_required, speed_npsh, speed_npsh, either=True),
         npsh_span=tested.npsh_span[low] * ratio,
     )
-    bep_low, bep_high = table.bep_flow[low] * flow_low, table.bep_flow[high] * flow_high
     number, suction_number = _numbers(table, model)
     return Pumps(
         curves=curves,
@@ -71,7 +74,7 @@ def trimmed(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Flo
         minimum=table.minimum[model],
         from_test=np.where(np.isnan(nearest), 0.0, np.abs(nearest - 1)),
         speed=table.speed[model] * ratio,
-        bep_flow=_either(mix, bep_low, bep_high) * ratio,
+        bep_flow=blend(table.bep_flow, flow_low * ratio, flow_high * ratio, either=True),
         specific_speed=number,
         suction_specific_speed=suction_number,
         minimum_flow=table.minimum_flow[model] * ratio,
@@ -85,34 +88,34 @@ def trimmed(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Flo
     )
 
 
-def _either(mix: Callable[[Floats, Floats], Floats], below: Floats, above: Floats) -> Floats:
-    """Mix two columns; where one of them was not measured, the other holds."""
-    mixed = mix(below, above)
-    return np.where(np.isnan(below), above, np.where(np.isnan(above), below, mixed))
-
-
 def head_at(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Floats, flow: Floats) -> Floats:
     """Head of models at one flow each, without making their whole curves.
 
     All (c,); flow in m3/s.  Returns (c,) [m]; NaN left of the first or right of the last measured point.
     """
     low, high, weight = _neighbours(table, model, diameter)
-    tested = table.tested
-    start, end, head = [], [], []
-    for row in (low, high):
-        cut = _ratio(diameter, table.diameter[row])
-        law_flow = cut ** table.flow_exponent[model] * speed_ratio
-        law_head = cut ** table.head_exponent[model] * speed_ratio**2
-        station = flow / (tested.span[row] * law_flow) * (tested.head.shape[1] - 1)
-        inside = np.clip(station, 0, tested.head.shape[1] - 1)
-        heads = tested.head[row]
-        read = interpolate.value(heads, interpolate.station_slopes(heads), np.arange(len(row)), inside)
-        start.append(tested.start[row] * law_flow)
-        end.append(tested.end[row] * law_flow)
-        head.append(read * law_head)
-    last = end[0] + weight * (end[1] - end[0])
-    known = (flow >= np.maximum(*start)) & (flow <= last)
-    return np.where(known, head[0] + weight * (head[1] - head[0]), np.nan)
+    start, end, head = _read(table, low, model, diameter, speed_ratio, flow)
+    between = np.flatnonzero(weight > 0)
+    if between.size:
+        rows, speed = high[between], speed_ratio[between]
+        above = _read(table, rows, model[between], diameter[between], speed, flow[between])
+        start[between] = np.maximum(start[between], above[0])
+        end[between] += weight[between] * (above[1] - end[between])
+        head[between] += weight[between] * (above[2] - head[between])
+    return np.where((flow >= start) & (flow <= end), head, np.nan)
+
+
+def _read(
+    table: PumpTable, row: Ints, model: Ints, diameter: Floats, speed_ratio: Floats, flow: Floats
+) -> tuple[Floats, Floats, Floats]:
+    """First and last measured flow of tested curves brought to a diameter, and head at a flow between."""
+    tested, last = table.tested, table.tested.head.shape[1] - 1
+    cut = _ratio(diameter, table.diameter[row])
+    law_flow = cut ** table.flow_exponent[model] * speed_ratio
+    law_head = cut ** table.head_exponent[model] * speed_ratio**2
+    station = np.minimum(np.maximum(flow / (tested.span[row] * law_flow) * last, 0), last)
+    head = interpolate.value_once(tested.head, station, row)
+    return tested.start[row] * law_flow, tested.end[row] * law_flow, head * law_head
 
 
 def end_at(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Floats) -> Floats:
@@ -177,16 +180,11 @@ def _numbers(table: PumpTable, model: Ints) -> tuple[Floats, Floats]:
     bep = table.bep_flow[row]
     curves = table.tested
     last = curves.head.shape[1] - 1
-    rows = np.arange(len(row))
     at = np.where(np.isnan(bep), 0.0, bep)
-    heads, needs = curves.head[row], curves.npsh_required[row]
-    head = interpolate.value(
-        heads, interpolate.station_slopes(heads), rows, np.minimum(at / curves.span[row], 1) * last
-    )
-    need = interpolate.value(
-        needs, interpolate.station_slopes(needs), rows, np.minimum(at / curves.npsh_span[row], 1) * last
-    )
-    need = np.where(at <= curves.npsh_span[row], need, np.nan)
+    head = interpolate.value_once(curves.head, np.minimum(at / curves.span[row], 1) * last, row)
+    reach = curves.npsh_span[row]
+    need = interpolate.value_once(curves.npsh_required, np.minimum(at / reach, 1) * last, row)
+    need = np.where(at <= reach, need, np.nan)
     speed = table.speed[model]
     flow = bep / table.eyes[model]
     return (

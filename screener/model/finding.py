@@ -36,6 +36,7 @@ class Findings:
     shortfall : relative to the limit, above 0 outside the fail bounds
     state, pump : where it governs, pump 0 being the new one; -1 where no state or pump is meant
     already   : outside the fail bounds, but no worse than today without the new pump
+    blank     : not assessed because the state has no figures, a pump being past its data
     """
 
     outcome: Codes
@@ -45,6 +46,7 @@ class Findings:
     state: Ints
     pump: Ints
     already: Bools
+    blank: Bools
 
 
 @dataclass(frozen=True, slots=True)

@@ -99,7 +99,9 @@ def test_best_flow_of_a_pump_with_power_only() -> None:
 def test_tests_of_one_model_share_an_axis_of_scaled_flow() -> None:
     exponents = {"flow_exponent": 1.5, "head_exponent": 2.5}
     short, long = np.linspace(0, 0.05, 9), np.linspace(0, 0.09, 9)
-    found = table_of(curve(0.2, short, 40 - 4000 * short**2), curve(0.25, long, 60 - 3000 * long**2), **exponents)
+    found = table_of(
+        curve(0.2, short, 40 - 4000 * short**2), curve(0.25, long, 60 - 3000 * long**2), **exponents
+    )
     law = (0.2 / 0.25) ** 1.5
     tested = found.tested
     assert tested.end.tolist() == [0.05, 0.09]
@@ -123,6 +125,16 @@ def test_tests_lend_each_other_what_one_of_them_lacks() -> None:
         np.testing.assert_allclose(found.tested.npsh_required[0], found.tested.npsh_required[1])
         np.testing.assert_allclose(found.tested.npsh_required[:, -1], need[-1])
         np.testing.assert_allclose(found.bep_flow / found.diameter, 0.25)  # 0.055 / 0.22 = 0.045 / 0.18
+
+
+def test_the_next_larger_test_lends_first() -> None:
+    def test(diameter: float, need: float) -> TestedCurve:
+        return curve(diameter, EIGHTHS, NASTY, npsh_required=np.full(9, need))
+
+    need = table_of(test(0.18, NAN), test(0.20, 2.0), test(0.22, 3.0)).tested.npsh_required
+    assert need[:, 0].tolist() == [2.0, 2.0, 3.0]
+    need = table_of(test(0.18, 1.0), test(0.20, NAN), test(0.22, 3.0), test(0.24, NAN)).tested.npsh_required
+    assert need[:, 0].tolist() == [1.0, 3.0, 3.0, 3.0]
 
 
 def test_efficiency_is_lent_only_where_power_is_missing_too() -> None:

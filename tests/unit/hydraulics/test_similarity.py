@@ -70,9 +70,7 @@ TABLE = compile_table([TWO, BARE])
 
 
 def at(table: PumpTable, diameter: float, *, row: int = 0, ratio: float = 1.0) -> Pumps:
-    return trimmed(
-        table, model=np.array([row]), diameter=np.array([diameter]), speed_ratio=np.array([ratio])
-    )
+    return trimmed(table, model=np.array([row]), diameter=np.array([diameter]), speed_ratio=np.array([ratio]))
 
 
 def read(pumps: Pumps, column: str, flow: float | np.ndarray) -> np.ndarray:
@@ -232,7 +230,9 @@ def test_specific_speeds_are_unknown_without_a_best_flow_or_npsh() -> None:
 
 @pytest.mark.parametrize("tested", [0.20, 0.21, 0.22])
 def test_continuous_across_a_tested_diameter(tested: float) -> None:
-    middle = curve(0.21, 46.0, 4100.0, 0.053, npsh_required=lambda q: 1.5 + 700 * q**2, efficiency=hill(0.033))
+    middle = curve(
+        0.21, 46.0, 4100.0, 0.053, npsh_required=lambda q: 1.5 + 700 * q**2, efficiency=hill(0.033)
+    )
     small = curve(0.20, 40.0, 4000.0, 0.05, npsh_required=lambda q: 1 + 900 * q**2, efficiency=hill(0.03))
     large = curve(0.22, 50.0, 3500.0, 0.06, npsh_required=lambda q: 1 + 800 * q**2, efficiency=hill(0.036))
     table = compile_table([model(small, middle, large, efficiency_loss=0.3, maximum=0.25, minimum=0.15)])
@@ -262,6 +262,14 @@ def test_head_at_and_end_at_agree_with_the_whole_curve(diameter: float, ratio: f
         place = np.array([share * end / pumps.curves.span[0] * 64])
         whole = interpolate.value(head, interpolate.station_slopes(head), np.array([0]), place)[0]
         assert found == pytest.approx(whole, rel=1e-10)
+
+
+def test_head_at_ends_with_the_blended_end() -> None:
+    # at 0.205 m: 0.75 * 0.05 * 0.205/0.20 + 0.25 * 0.06 * 0.205/0.22 = 0.0524148; the longer alone 0.0559
+    end = 0.75 * 0.05 * 0.205 / 0.20 + 0.25 * 0.06 * 0.205 / 0.22
+    asked = {"model": np.array([0, 0]), "diameter": np.full(2, 0.205), "speed_ratio": np.ones(2)}
+    found = head_at(TABLE, **asked, flow=end * np.array([0.999, 1.001]))
+    assert np.isnan(found).tolist() == [False, True]
 
 
 def test_head_at_by_hand_and_silent_outside_the_points() -> None:
@@ -310,9 +318,7 @@ def test_many_at_once_are_each_alone_and_stack_and_take_keep_rows() -> None:
     diameters = np.array([0.205, NAN, 0.22, 0.17, 0.235])
     ratios = np.array([1.0, 1.02, 0.9, 1.0, 1.1])
     together = trimmed(TABLE, model=rows, diameter=diameters, speed_ratio=ratios)
-    alone = [
-        at(TABLE, d, row=int(row), ratio=r) for row, d, r in zip(rows, diameters, ratios, strict=True)
-    ]
+    alone = [at(TABLE, d, row=int(row), ratio=r) for row, d, r in zip(rows, diameters, ratios, strict=True)]
     for name, values in columns(together).items():
         np.testing.assert_array_equal(values, columns(stack(alone))[name], err_msg=name)
         np.testing.assert_array_equal(values[[3, 1]], columns(take(together, np.array([3, 1])))[name])
