@@ -1,0 +1,67 @@
+"""Score and order: what a header with the candidate on it costs to run, and how well the curves match."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+import numpy as np
+
+from screener.hydraulics.constants import GRAVITY
+from screener.model.arrays import Floats
+from screener.model.finding import Figures
+from screener.model.run import Kind, Run
+
+SECONDS_PER_HOUR = 3600.0
+
+
+def figures(run: Run, *, count: int, weights: Mapping[str, float]) -> Figures:
+    """Energy, match and score of c candidates.
+
+    count   : identical new pumps
+    weights : "efficiency", "shutoff_match", "load_share" [points for each percent or point]
+
+    score = w_eta eta - w_0 |shutoff mismatch| - w_s load-share difference, in percent and points; the
+    useful head is the system's, so head burned at the valves of the users counts as lost.
+    """
+    conditions = run.conditions
+    duty = conditions.kind == Kind.DUTY
+    hours = conditions.hours
+    known_hours = not np.isnan(hours[duty]).any()
+    weight = np.where(duty, conditions.share_of_hours * (hours if known_hours else 1.0), 0.0)
+    pumps = np.ones(run.flow.shape[2])
+    pumps[0] = count
+    power = np.where(conditions.runs, run.power, 0.0) @ pumps
+    delivered = np.minimum(run.total, conditions.asked)
+    useful = conditions.density * GRAVITY * conditions.asked * conditions.wanted_head
+    weighted_power = _weighted(power, weight)
+    efficiency = (useful * weight).sum() / weighted_power
+    mismatch = np.where(np.isnan(run.shutoff_match), 0.0, run.shutoff_match)
+    worst = mismatch[np.arange(len(mismatch)), np.abs(mismatch).argmax(axis=1)]
+    worst = np.where(np.isnan(run.shutoff_match).all(axis=1), np.nan, worst)
+    share = np.fmax.reduce(run.load_share, axis=1)
+    year = SECONDS_PER_HOUR if known_hours else np.nan
+    return Figures(
+        efficiency=efficiency,
+        power=weighted_power / weight.sum(),
+        energy=weighted_power * year,
+        volume=_weighted(delivered, weight) * year,
+        shutoff=worst,
+        share=share,
+        score=100
+        * (
+            weights["efficiency"] * efficiency
+            - weights["shutoff_match"] * np.abs(worst)
+            - weights["load_share"] * share
+        ),
+        firm=_firm(run),
+    )
+
+
+def _weighted(values: Floats, weight: Floats) -> Floats:
+    return np.asarray((values[:, weight > 0] * weight[weight > 0]).sum(axis=1))
+
+
+def _firm(run: Run) -> Floats:
+    """Share of the duty that is delivered after each trip, (c, t)."""
+    trips = run.conditions.kind == Kind.TRIP
+    return np.asarray(np.minimum(run.total[:, trips] / run.conditions.asked[trips], 1.0))

@@ -1,0 +1,1 @@
+"""The pipeline: a table and a case to candidates, states, findings, ranks."""

@@ -1,0 +1,109 @@
+"""Figures of pumps that no state changes, for new and installed pumps alike."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from screener.header.branch import BranchCurves
+from screener.hydraulics import interpolate
+from screener.hydraulics.constants import GRAVITY, REFERENCE_DENSITY
+from screener.hydraulics.heating import thermal_minimum_flow
+from screener.model.arrays import STATIONS, Floats, Real
+from screener.model.curves import Pumps
+from screener.model.run import Ratings
+
+
+def thermal_power(pumps: Pumps) -> Floats:
+    """Largest shaft power at 1000 kg/m3 from shutoff to best efficiency, (c,) [W]; NaN where not known.
+
+    Taking it there and not at the minimum flow itself is on the safe side: common practice, no source.
+    """
+    flow = _station_flows(pumps)
+    below_best = ~(flow > pumps.bep_flow[:, None]) & (flow <= pumps.curves.end[:, None])
+    power = station_power(pumps)
+    return np.fmax(_largest(np.where(below_best, power, np.nan)), _read(pumps, power, pumps.bep_flow))
+
+
+def station_power(pumps: Pumps) -> Floats:
+    """Shaft power at 1000 kg/m3 at the stations, (c, k) [W]: as measured, else from the efficiency."""
+    curves = pumps.curves
+    efficiency = np.where(curves.efficiency > 0, curves.efficiency, np.nan)
+    flow = _station_flows(pumps)
+    worked_out = REFERENCE_DENSITY * GRAVITY * flow * curves.head / efficiency
+    return np.where(np.isnan(curves.power) & (flow > 0), worked_out, curves.power)
+
+
+def ratings(pumps: Pumps, branches: BranchCurves, motor: Floats) -> Ratings:
+    """Ratings of c pumps, each (c,). motor : (c,) [W] nameplates, NaN where not known or not chosen yet."""
+    curves = pumps.curves
+    flow = _station_flows(pumps)
+    inside = (flow >= curves.start[:, None] * (1 - 1e-12)) & (flow <= curves.end[:, None] * (1 + 1e-12))
+    head = np.where(inside, curves.head, np.nan)
+    shutoff = np.where(curves.start == 0, curves.head[:, 0], np.nan)
+    lowest = np.fmin.accumulate(head, axis=1)
+    return Ratings(
+        shutoff=shutoff,
+        summit=np.where(np.isnan(shutoff), np.nan, _largest(head)),
+        droop=_largest(head - lowest) / shutoff,
+        header_shutoff=branches.shutoff,
+        header_summit=branches.low_head,
+        operates_from=branches.low,
+        start=curves.start,
+        end=curves.end,
+        bep_flow=pumps.bep_flow,
+        minimum_flow=pumps.minimum_flow,
+        maximum_flow=pumps.maximum_flow,
+        thermal_power=thermal_power(pumps),
+        shutoff_power=curves.power[:, 0],
+        region_low=pumps.region_low,
+        region_high=pumps.region_high,
+        specific_speed=pumps.specific_speed,
+        suction_specific_speed=pumps.suction_specific_speed,
+        allowable_pressure=pumps.allowable_pressure,
+        maximum_power=pumps.maximum_power,
+        motor=motor,
+        head_tolerance=pumps.head_tolerance,
+    )
+
+
+def _station_flows(pumps: Pumps) -> Floats:
+    return np.linspace(0, 1, STATIONS) * pumps.curves.span[:, None]
+
+
+def _largest(values: Floats) -> Floats:
+    """Largest of each row, ignoring NaN; NaN for a row of nothing else."""
+    largest = np.fmax.reduce(values, axis=1)
+    return np.asarray(largest)
+
+
+def efficiency_at(pumps: Pumps, flow: float) -> Floats:
+    """Efficiency of each pump at one flow [m3/s], (c,) [-]; NaN outside its data."""
+    return _read(pumps, _efficiencies(pumps), np.full(len(pumps), flow))
+
+
+def smallest_flow(pumps: Pumps, *, heat_capacity: Real, temperature_rise: Real) -> Floats:
+    """Smallest allowed flow of each pump, stable or thermal, (c,) [m3/s]; 0 where neither is known."""
+    thermal = thermal_minimum_flow(
+        power=thermal_power(pumps),
+        density=REFERENCE_DENSITY,
+        heat_capacity=heat_capacity,
+        temperature_rise=temperature_rise,
+    )
+    return np.nan_to_num(np.fmax(pumps.minimum_flow, thermal))
+
+
+def _read(pumps: Pumps, values: Floats, flow: Floats) -> Floats:
+    """One column of the stations (c, k) at a flow of each pump (c,); NaN outside its data."""
+    curves = pumps.curves
+    known = (flow >= curves.start) & (flow <= curves.end)
+    station = np.where(known, flow / curves.span * (STATIONS - 1), 0.0)
+    read = interpolate.value(values, interpolate.station_slopes(values), np.arange(len(pumps)), station)
+    return np.where(known, read, np.nan)
+
+
+def _efficiencies(pumps: Pumps) -> Floats:
+    """Efficiency at the stations, (c, k): as measured, else from the shaft power."""
+    curves = pumps.curves
+    flow = _station_flows(pumps)
+    worked_out = REFERENCE_DENSITY * GRAVITY * flow * curves.head / curves.power
+    return np.where(np.isnan(curves.efficiency), worked_out, curves.efficiency)

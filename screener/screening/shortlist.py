@@ -1,0 +1,175 @@
+"""The whole job: a case and a table to a ranked, explained shortlist."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+
+from screener.header.requirement import Requirement, requirement
+from screener.hydraulics.similarity import take as take_pumps
+from screener.hydraulics.similarity import trimmed
+from screener.model.arrays import Bools, Floats, Ints
+from screener.model.case import Case
+from screener.model.curves import PumpTable
+from screener.model.finding import Candidates, Findings, Verdict
+from screener.model.run import Kind
+from screener.screening.assess import Bench, assess, join, judged, set_up, take
+from screener.screening.judge import inherited
+from screener.screening.ratings import efficiency_at
+from screener.screening.reach import Reach, Reason, reach
+
+LADDER = 12
+"""Diameters of each model looked at first, from the smallest that meets the duties to the largest."""
+
+Progress = Callable[[int, int], None]
+
+
+@dataclass(frozen=True, slots=True)
+class Shortlist:
+    """The result over n models; everything an output shows is drawn from here.
+
+    bench      : the header, the same today, and the limits
+    table      : the n models
+    needs      : state -> what it asks of the new pump, for every duty with a new pump
+    reach      : (n,) which models can meet the duties, and from which diameter on
+    best       : each model that can, at its best diameter: accepted by score, conditional by score, then
+                 rejected, nearest first
+    duty_efficiency : (b,) [-] efficiency of each of `best` at the flow that the rated duty asks of the new
+                 pump, as a search pump by pump would see it; NaN where not known
+    screened   : candidates that were run
+    references : one more of each kind of installed pump
+    same_as    : for each reference the row of the installed pump
+    inherited  : what is outside its limits today, one row
+    """
+
+    bench: Bench
+    table: PumpTable
+    needs: dict[int, Requirement]
+    reach: Reach
+    best: Candidates
+    duty_efficiency: Floats
+    screened: int
+    references: Candidates
+    same_as: tuple[int, ...]
+    inherited: Findings
+
+
+def shortlist(case: Case, catalog: PumpTable, *, progress: Progress | None = None) -> Shortlist:
+    """Screen a catalog for the free place on a header.
+
+    case : as read by `load_case`;  catalog : n models, as read by `load_catalog`
+    progress : called with the candidates done and the number in all, per pass
+    """
+    bench = set_up(case)
+    needs = requirements(bench)
+    found = reach(catalog, list(needs.values()), case.new_pump)
+    rows, diameters = _ladder(catalog, found, case.new_pump.trim_step)
+    first = _assess(bench, catalog, found, rows, diameters, progress)
+    rows, diameters = _between(first, case.new_pump.trim_step)
+    candidates = join([first, _assess(bench, catalog, found, rows, diameters, progress)])
+    best = take(candidates, _order(take(candidates, kept := _best(candidates)), kept))
+    same_as = tuple(dict.fromkeys(int(row) for row in bench.header.alike))
+    return Shortlist(
+        bench=bench,
+        table=catalog,
+        needs=needs,
+        reach=found,
+        best=best,
+        duty_efficiency=_duty_efficiency(catalog, found, best, needs[bench.header.rated].flow),
+        screened=len(candidates),
+        references=judged(bench, take_pumps(case.pumps, np.array(same_as))).candidates,
+        same_as=same_as,
+        inherited=inherited(bench.today, bench.limits),
+    )
+
+
+def requirements(bench: Bench) -> dict[int, Requirement]:
+    """What each duty with a new pump asks of it, by state."""
+    header = bench.header
+    return {
+        place: requirement(
+            header.branches,
+            running=state.running,
+            curve=header.left[place].curve,
+            asked=state.asked,
+            count=state.new,
+            place=header.case.new_pump.branch,
+        )
+        for place, state in enumerate(header.states)
+        if state.kind == Kind.DUTY and state.new
+    }
+
+
+def best_of(candidates: Candidates) -> int:
+    """The row to show of the candidates of one model."""
+    return int(_best(candidates)[0])
+
+
+def _duty_efficiency(catalog: PumpTable, found: Reach, best: Candidates, flow: float) -> Floats:
+    speed_ratio = found.speed_ratio[best.model]
+    return efficiency_at(
+        trimmed(catalog, model=best.model, diameter=best.diameter, speed_ratio=speed_ratio), flow
+    )
+
+
+def _assess(
+    bench: Bench, catalog: PumpTable, found: Reach, rows: Ints, diameters: Floats, progress: Progress | None
+) -> Candidates:
+    return assess(
+        bench,
+        catalog,
+        model=rows,
+        diameter=diameters,
+        speed_ratio=found.speed_ratio[rows],
+        progress=progress,
+    )
+
+
+def _ladder(catalog: PumpTable, found: Reach, step: float) -> tuple[Ints, Floats]:
+    """Up to `LADDER` diameters of each model that reaches the duties, spread over what is on offer."""
+    models = np.flatnonzero(found.reason == Reason.REACHES)
+    least = np.minimum(np.ceil(found.wanted[models] / step - 1e-6) * step, found.at_most[models])
+    steps = np.ceil(np.nan_to_num((found.at_most[models] - least) / step) - 1e-6)
+    rungs = np.linspace(0, 1, LADDER) * np.maximum(steps, 0)[:, None]
+    diameters = np.minimum(least[:, None] + np.rint(rungs) * step, found.at_most[models, None])
+    diameters = np.asarray(np.round(diameters, 9), np.float64)
+    new = np.ones(diameters.shape, bool)
+    new[:, 1:] = diameters[:, 1:] > diameters[:, :-1]
+    return np.repeat(models, new.sum(axis=1)), diameters[new]
+
+
+def _between(candidates: Candidates, step: float) -> tuple[Ints, Floats]:
+    """Every trim step next to the best diameter of a model, and where its verdict changes."""
+    model, diameter = candidates.model, candidates.diameter
+    if len(model) < 2:
+        return np.empty(0, np.int64), np.empty(0)
+    best = np.zeros(len(model), bool)
+    best[_best(candidates)] = True
+    same = model[1:] == model[:-1]
+    wanted = same & ((candidates.verdict[1:] != candidates.verdict[:-1]) | best[1:] | best[:-1])
+    low, high = diameter[:-1][wanted], diameter[1:][wanted]
+    count = np.maximum(np.ceil((high - low) / step - 1e-6).astype(np.int64) - 1, 0)
+    number = np.arange(count.sum()) - np.repeat(np.cumsum(count) - count, count) + 1
+    diameters: Floats = np.round(np.repeat(low, count) + number * step, 9)
+    return np.repeat(model[:-1][wanted], count), diameters
+
+
+def _best(candidates: Candidates) -> Ints:
+    """Row of the best candidate of each model, in the order of models."""
+    order = np.lexsort((candidates.diameter, _merit(candidates), candidates.verdict, candidates.model))
+    first: Bools = np.ones(len(order), bool)
+    first[1:] = candidates.model[order][1:] != candidates.model[order][:-1]
+    return order[first]
+
+
+def _order(best: Candidates, rows: Ints) -> Ints:
+    """The rows of the best candidates, accepted first, then conditional, then rejected, nearest first."""
+    return rows[np.lexsort((best.model, _merit(best), best.verdict))]
+
+
+def _merit(candidates: Candidates) -> Floats:
+    """What orders candidates of one verdict, the smaller the better."""
+    score = np.where(np.isnan(candidates.figures.score), -np.inf, candidates.figures.score)
+    return np.where(candidates.verdict == Verdict.REJECTED, candidates.worst, -score)
