@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 import tempfile
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from contextlib import suppress
 from pathlib import Path
 
@@ -24,9 +24,7 @@ def write_all(items: Mapping[str | Path, bytes | str], *, force: bool) -> None:
     Raises OutputError, with every target that cannot be written, before anything is written: it exists and
     `force` is off, it is not a file, its folder does not exist; or when the system refuses to write.
     """
-    problems = [problem for path in items for problem in _refusals(Path(path), force)]
-    if problems:
-        raise OutputError(problems)
+    check(items, force=force)
     ready: list[tuple[str, str | Path]] = []
     path: str | Path = ""
     try:
@@ -46,6 +44,13 @@ def write_all(items: Mapping[str | Path, bytes | str], *, force: bool) -> None:
         for temporary, _ in ready:
             with suppress(FileNotFoundError):
                 os.unlink(temporary)
+
+
+def check(paths: Iterable[str | Path], *, force: bool) -> None:
+    """Raise OutputError with every target that `write_all` would refuse."""
+    problems = [problem for path in paths for problem in _refusals(Path(path), force)]
+    if problems:
+        raise OutputError(problems)
 
 
 def _refusals(path: Path, force: bool) -> list[Problem]:

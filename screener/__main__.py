@@ -1,0 +1,5 @@
+"""`python -m screener`."""
+
+from screener.cli import main
+
+main()

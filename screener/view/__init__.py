@@ -1,0 +1,1 @@
+"""Results to neutral blocks: headings, lines, tables, words. Every output draws from here; none computes."""

@@ -1,0 +1,212 @@
+"""Results as plain data, field by field: what the json, the csv and the data frame hold."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from screener import units
+from screener.criteria import criteria
+from screener.model.finding import Candidates, Outcome, Verdict
+from screener.model.run import Kind, Run
+from screener.screening.assess import Bench
+from screener.screening.reach import Reason
+from screener.screening.shortlist import Shortlist
+from screener.version import __version__
+from screener.view import names
+from screener.view.display import Display, tidy
+from screener.view.findings import Found, found, unit_of
+
+VERDICTS = {Verdict.ACCEPTED: "accepted", Verdict.CONDITIONAL: "conditional", Verdict.REJECTED: "rejected"}
+
+REASONS = {
+    Reason.HEAD_TOO_LOW: "head too low",
+    Reason.CURVE_TOO_SHORT: "flow past the end of the curve",
+    Reason.TOO_LARGE: "too large at the smallest impeller",
+    Reason.NOT_MEASURED: "not measured at that flow",
+    Reason.WRONG_SPEED: "speed that this supply does not give",
+}
+
+CAUTIONS = (
+    "Screening only: confirm every figure with the manufacturer's certified curve.",
+    "Local codes and licensed practice govern. No surge, vibration, relief or electrical study is made.",
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Origin:
+    """Where a result came from: files read, as (name, sha256)."""
+
+    files: Sequence[tuple[str, str]] = ()
+
+
+def head(bench: Bench, kind: str, origin: Origin) -> dict[str, Any]:
+    """What every json begins with."""
+    case = bench.header.case
+    return {
+        "format": f"{kind}/1",
+        "tool": {"name": "screener", "version": __version__},
+        "title": case.title,
+        "date": case.date or None,
+        "inputs": [{"file": file, "sha256": digest} for file, digest in origin.files],
+        "units": dict(case.display),
+        "cautions": list(CAUTIONS),
+    }
+
+
+def candidate(result: Shortlist, display: Display, row: int) -> dict[str, Any]:
+    """One candidate of the shortlist, with its findings."""
+    table, best = result.table, result.best
+    model = int(best.model[row])
+    return {
+        "pump": table.ids[model],
+        "title": table.titles[model],
+        "construction": table.constructions[model],
+        "source": table.sources[model],
+        "verdict": VERDICTS[Verdict(int(best.verdict[row]))],
+        "diameter": display.number("length", best.diameter[row]),
+        "wanted_diameter": display.number("length", result.reach.wanted[model]),
+        "speed": tidy(float(table.speed[model] * result.reach.speed_ratio[model])),
+        "efficiency_at_duty": _percent(result.duty_efficiency[row]),
+        **figures(result.bench, display, best, row),
+        "findings": [finding(item, display) for item in found(result.bench, display, best.findings, row)],
+    }
+
+
+def figures(bench: Bench, display: Display, candidates: Candidates, row: int) -> dict[str, Any]:
+    """What one candidate costs and gives."""
+    f = candidates.figures
+    trips = [state for state in bench.header.states if state.kind == Kind.TRIP]
+    volume, energy = float(f.volume[row]), float(f.energy[row])
+    return {
+        "score": tidy(float(f.score[row])),
+        "efficiency": _percent(f.efficiency[row]),
+        "power": display.number("power", f.power[row]),
+        "energy_mwh_per_year": tidy(energy / 3.6e9),
+        "energy_kwh_per_m3": tidy(energy / 3.6e6 / volume),
+        "shutoff_match": _percent(f.shutoff[row]),
+        "load_share": _percent(f.share[row]),
+        "lowest_flow_of_best": _percent(candidates.lowest_share[row]),
+        "npsh_ratio": tidy(float(candidates.npsh[row])),
+        "motor": display.number("power", candidates.motor[row]),
+        "firm_flow": [
+            {"state": names.where(bench.header.case, state), "delivered": _percent(f.firm[row, place])}
+            for place, state in enumerate(trips)
+        ],
+    }
+
+
+def finding(item: Found, display: Display) -> dict[str, Any]:
+    """One finding."""
+    return {
+        "criterion": item.criterion.name,
+        "outcome": item.verdict.value,
+        "observed": item.value.value,
+        "limit": item.limit.value,
+        "unit": unit_of(item.criterion, display),
+        "shortfall": tidy(item.shortfall) if item.outcome == Outcome.FAIL else None,
+        "pump": item.pump,
+        "where": item.where,
+        "already_so_today": item.already,
+        "missing": item.needs if item.outcome == Outcome.NOT_ASSESSED else None,
+    }
+
+
+def limits(bench: Bench, display: Display) -> list[dict[str, Any]]:
+    """Every limit used, with its source."""
+    rows = []
+    for criterion in criteria():
+        for name, limit in criterion.limits.items():
+            used = bench.limits[criterion.name][name]
+            shown = Limited(criterion.unit, limit.unit)
+            rows.append(
+                {
+                    "criterion": criterion.name,
+                    "limit": name,
+                    "value": shown.number(display, used),
+                    "unit": shown.unit(display),
+                    "source": limit.source if used == limit.default else "set in the case",
+                }
+            )
+    return rows
+
+
+@dataclass(frozen=True, slots=True)
+class Limited:
+    """The unit of a limit: its own, else that of its criterion."""
+
+    criterion: str
+    own: str
+
+    def unit(self, display: Display) -> str:
+        """Name of the unit to show it in."""
+        name = self.own or self.criterion
+        quantity = _quantity(name)
+        return display.unit(quantity) if quantity in display.names() else ("" if name == "-" else name)
+
+    def number(self, display: Display, value: float) -> float | None:
+        """The limit in that unit."""
+        name = self.own or self.criterion
+        quantity = _quantity(name)
+        if quantity in display.names():
+            return display.number(quantity, value)
+        return tidy(value * 100 if name == "%" else value)
+
+
+def _quantity(unit: str) -> str:
+    """Quantity of a unit, "" where it is shown as it is: kelvin stands for a difference of temperature."""
+    if unit == "K":
+        return ""
+    return next((d for d in units.SI if unit in units.unit_names(d)), "")
+
+
+def states(bench: Bench, display: Display, run: Run, row: int = 0) -> list[dict[str, Any]]:
+    """What one candidate, or today's header, does in every state."""
+    case = bench.header.case
+    result = []
+    for place, state in enumerate(bench.header.states):
+        pumps = [
+            {
+                "pump": names.pump(case, column),
+                "runs": bool(run.conditions.runs[place, column])
+                and bool(column or np.isfinite(run.ratings.end[row, 0])),
+                "flow": display.number("flow", run.flow[row, place, column]),
+                "flow_of_best": _percent(run.flow[row, place, column] / run.ratings.bep_flow[row, column]),
+                "past_end": bool(np.isposinf(run.flow[row, place, column])),
+                "not_measured": bool(np.isneginf(run.flow[row, place, column])),
+                "head": display.number("head", run.head[row, place, column]),
+                "power": display.number("power", run.power[row, place, column]),
+                "efficiency": _percent(run.efficiency[row, place, column]),
+                "npsh_available": display.number("npsh", run.npsh_available[row, place, column]),
+                "npsh_required": display.number("npsh", run.npsh_required[row, place, column]),
+            }
+            for column in range(run.flow.shape[2])
+        ]
+        result.append(
+            {
+                "state": names.where(case, state),
+                "duty": case.duties[state.duty].name,
+                "level": names.level(case, state),
+                "kind": Kind(state.kind).name.lower().replace("_", " "),
+                "running": names.combination(case, state.running, state.new),
+                "asked": display.number("flow", state.asked),
+                "header_head": display.number("head", run.header[row, place]),
+                "total_flow": display.number("flow", run.total[row, place]),
+                "pumps": pumps,
+            }
+        )
+    return result
+
+
+def _percent(value: float) -> float | None:
+    return tidy(100 * float(value)) if np.isfinite(value) else None
+
+
+def rows(items: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
+    """The same rows without what is nested in them."""
+    return [
+        {key: value for key, value in item.items() if not isinstance(value, list | dict)} for item in items
+    ]

@@ -1,0 +1,226 @@
+"""The screen of `screener shortlist`: the requirement, the ranked table, and why the rest does not pass."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+
+from screener.model.finding import Outcome, Verdict
+from screener.screening.reach import Reason
+from screener.screening.shortlist import Shortlist
+from screener.screening.today import naive
+from screener.view import data, names, requirement, why_not
+from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
+from screener.view.data import Origin
+from screener.view.display import Display, plain, word
+from screener.view.findings import found
+from screener.view.why_not import ranked_cells
+
+TOP = 10
+
+
+def screen(result: Shortlist, origin: Origin, *, top: int = TOP, everything: bool = False) -> Screen:
+    """The shortlist as blocks, its ranked table, and all of it as data.
+
+    top : rows shown of each group;  everything : all rows, and every model that cannot reach the duty
+    """
+    case = result.bench.header.case
+    display = Display(case.display)
+    groups = {verdict: np.flatnonzero(result.best.verdict == verdict) for verdict in Verdict}
+    shown = len(result.best) if everything else top
+    accepted = groups[Verdict.ACCEPTED]
+    blocks: list[Block] = [
+        Heading(case.title, f"{len(result.table)} models, {len(result.bench.header.states)} states"),
+        Lines([_requirement(result, display), _counts(result, groups)]),
+    ]
+    if accepted.size:
+        blocks += [
+            Heading("ACCEPTED, BY SCORE", _more(accepted, shown)),
+            _ranked(result, display, accepted[:shown], references=True),
+        ]
+    else:
+        blocks += [Heading("NOTHING IS ACCEPTED"), _ranked(result, display, accepted, references=True)]
+    blocks += why_not.most_efficient(result, display, groups)
+    conditional = groups[Verdict.CONDITIONAL]
+    if conditional.size:
+        blocks += [
+            Heading("CONDITIONAL: NOTHING FAILED, SOMETHING IS NOT KNOWN", _more(conditional, shown)),
+            why_not.conditional(result, display, conditional[:shown]),
+        ]
+    rejected = groups[Verdict.REJECTED]
+    if rejected.size:
+        blocks += [
+            Heading("REJECTED, NEAREST FIRST", _more(rejected, shown)),
+            why_not.rejected(result, display, rejected[:shown], everything),
+        ]
+    blocks += why_not.out_of_reach(result, display, everything)
+    blocks.append(Lines(_notes(result, display), Tone.QUIET))
+    blocks.append(Lines(data.CAUTIONS, Tone.QUIET))
+    flat = _flat(result, display)
+    return Screen(blocks, flat, _data(result, display, origin, groups))
+
+
+def _requirement(result: Shortlist, display: Display) -> str:
+    header = result.bench.header
+    need, simple = result.needs[header.rated], naive(result.bench, header.rated)
+    where = names.where(header.case, header.states[header.rated])
+    if np.isnan(need.flow):
+        return f"Required of the new pump: not known at {where}: an installed pump would run past its data."
+    missing = ""
+    if np.isfinite(simple.missing_flow):
+        missing = f" (the flow missing today is {display.text('flow', simple.missing_flow)})"
+    return (
+        f"Required of the new pump: {display.full('flow', need.flow)} at {display.full('head', need.head)}, "
+        f"{where}{missing}."
+    )
+
+
+def _counts(result: Shortlist, groups: dict[Verdict, Any]) -> str:
+    beyond = int((result.reach.reason != Reason.REACHES).sum())
+    return (
+        f"{groups[Verdict.ACCEPTED].size} accepted, {groups[Verdict.CONDITIONAL].size} conditional, "
+        f"{groups[Verdict.REJECTED].size} near misses, {beyond} cannot reach the duties."
+    )
+
+
+def _more(rows: Any, shown: int) -> str:
+    return f"{len(rows) - shown} more: --top or --all" if len(rows) > shown else ""
+
+
+def _ranked(result: Shortlist, display: Display, rows: Any, *, references: bool = False) -> Table:
+    """The ranked table, with one more of each kind of installed pump under it."""
+    columns = [
+        Column("rank", ""),
+        Column("pump", "pump", left=True),
+        Column("diameter", display.unit("length")),
+        Column("score", "score"),
+        Column("efficiency", "eff %", "%"),
+        Column("energy_mwh_per_year", "MWh/y", rank=2),
+        Column("shutoff_match", "shutoff %", "%"),
+        Column("load_share", "share", "%", rank=1),
+        Column("lowest_flow_of_best", "% BEP", "%", rank=3),
+        Column("npsh_ratio", "NPSH", rank=4),
+        Column("motor", display.unit("power"), display.unit("power"), rank=5),
+        Column("energy_kwh_per_m3", "kWh/m3", rank=6),
+        Column("firm_flow", "firm %", "%", rank=7),
+        Column("cautions", "cautions", rank=8),
+    ]
+    table = [
+        [
+            plain(number + 1, 0),
+            word(result.table.ids[int(result.best.model[row])]),
+            *ranked_cells(result.best, display, row),
+        ]
+        for number, row in enumerate(rows)
+    ]
+    if references:
+        case = result.bench.header.case
+        for row, installed in enumerate(result.same_as):
+            failed = result.references.verdict[row] == Verdict.REJECTED
+            tone = Tone.QUIET
+            label = f"one more {case.installed[installed].tag}" + (" (fails)" if failed else "")
+            cells = [word("="), word(label), *ranked_cells(result.references, display, row)]
+            table.append([Cell(cell.text, cell.value, tone) for cell in cells])
+    note = [
+        "eff: useful head of the system over shaft energy, all pumps. share: load-share difference, points. "
+        "% BEP: lowest flow over best efficiency, any pump in any duty. NPSH: lowest NPSHa/NPSHr, trips "
+        "included."
+    ]
+    return Table(columns, table, note)
+
+
+def _notes(result: Shortlist, display: Display) -> list[str]:
+    """What a reader must know about the basis of the ranking."""
+    case = result.bench.header.case
+    notes = []
+    if any(np.isnan(duty.hours) for duty in case.duties):
+        notes.append(
+            "Not every duty states its hours: duties are weighted equally, and no energy per year is given."
+        )
+    items = found(result.bench, display, result.inherited, 0)
+    outside = [item for item in items if item.outcome == Outcome.FAIL]
+    if outside:
+        listed = "; ".join(f"{item.criterion.name} of {item.pump} at {item.where}" for item in outside)
+        notes.append(f"Outside a limit today already, and no reason to reject a pump: {listed}.")
+    if np.isfinite(case.system.fit_deviation):
+        off = display.full("head", case.system.fit_deviation)
+        notes.append(f"The system curve is fitted to measured points; the farthest is {off} off.")
+    return notes
+
+
+def _flat(result: Shortlist, display: Display) -> Table:
+    """Every candidate shown, one row each, every figure: what the csv holds."""
+    items = [data.candidate(result, display, row) for row in range(len(result.best))]
+    keys = [key for key, value in items[0].items() if not isinstance(value, list | dict)] if items else []
+    columns = [
+        Column("rank", "rank"),
+        *(Column(key, key, FLAT_UNITS.get(key, "")) for key in keys),
+        Column("reasons", "reasons", left=True),
+    ]
+    rows = []
+    for number, item in enumerate(items):
+        failed = [f["criterion"] for f in item["findings"] if f["outcome"] == "fail"]
+        cells = [Cell("" if item[key] is None else str(item[key]), item[key]) for key in keys]
+        rows.append([Cell(str(number + 1), number + 1), *cells, word(" ".join(failed))])
+    named = {"diameter": "length", "wanted_diameter": "length", "power": "power", "motor": "power"}
+    columns = [
+        Column(c.key, c.title, display.unit(named[c.key]), c.left) if c.key in named else c for c in columns
+    ]
+    return Table(columns, rows)
+
+
+FLAT_UNITS = {
+    "speed": "rpm",
+    "efficiency_at_duty": "%",
+    "efficiency": "%",
+    "energy_mwh_per_year": "MWh/y",
+    "energy_kwh_per_m3": "kWh/m3",
+    "shutoff_match": "%",
+    "load_share": "%",
+    "lowest_flow_of_best": "%",
+}
+
+
+def _data(result: Shortlist, display: Display, origin: Origin, groups: dict[Verdict, Any]) -> dict[str, Any]:
+    bench, reason = result.bench, result.reach.reason
+    case = bench.header.case
+    listed = {
+        data.VERDICTS[verdict]: [data.candidate(result, display, int(row)) for row in rows]
+        for verdict, rows in groups.items()
+    }
+    return {
+        **data.head(bench, "pump-shortlist", origin),
+        "requirement": requirement.rows(
+            bench, display, result.needs, {place: naive(bench, place) for place in result.needs}
+        ),
+        "counts": {
+            "models": len(result.table),
+            "states": len(bench.header.states),
+            "candidates_run": result.screened,
+            **{name: len(items) for name, items in listed.items()},
+            "cannot_reach": {
+                name: int((reason == code).sum())
+                for code, name in data.REASONS.items()
+                if (reason == code).any()
+            },
+        },
+        **listed,
+        "references": [
+            {
+                "same_as": case.installed[installed].tag,
+                "verdict": data.VERDICTS[Verdict(int(result.references.verdict[row]))],
+                "diameter": display.number("length", result.references.diameter[row]),
+                **data.figures(bench, display, result.references, row),
+            }
+            for row, installed in enumerate(result.same_as)
+        ],
+        "inherited": [
+            data.finding(item, display)
+            for item in found(bench, display, result.inherited, 0)
+            if item.outcome in (Outcome.FAIL, Outcome.CAUTION)
+        ],
+        "today": data.states(bench, display, bench.today),
+        "limits": data.limits(bench, display),
+        "notes": _notes(result, display),
+    }
