@@ -106,9 +106,9 @@ def _peak_station(head: Floats, first: Ints, last: Floats) -> Ints:
     """Station where the falling side begins: the highest after the last rise that is more than noise."""
     station = np.arange(STATIONS)
     measured = (station >= first[:, None]) & (station <= last[:, None])
-    lowest = np.minimum.accumulate(np.where(measured, head, np.inf), axis=1)
-    risen = measured & (head > lowest + DROOP * np.abs(head[:, :1]))
-    last_rise = np.where(risen.any(axis=1), _LAST - np.argmax(risen[:, ::-1], axis=1), first)
+    highest_later = np.maximum.accumulate(np.where(measured, head, -np.inf)[:, ::-1], axis=1)[:, ::-1]
+    rises = measured & (highest_later > head + DROOP * np.abs(head[:, :1]))
+    last_rise = np.where(rises.any(axis=1), _LAST - np.argmax(rises[:, ::-1], axis=1), first)
     return np.asarray(np.where(measured & (station >= last_rise[:, None]), head, -np.inf).argmax(axis=1))
 
 
@@ -138,7 +138,8 @@ def flow_at(branches: BranchCurves, rows: Ints, head: Floats) -> Floats:
     low, high = np.maximum(first - cell, 0.0), np.minimum(last - cell, 1.0)
     place = _in_cell(interpolate.polynomial(stations, slopes, base + cell), head, low, high)
     flow = (cell + place) / per_flow
-    shut = np.where(branches.closes[rows], 0.0, np.nan)
+    at_first = np.where(head == branches.low_head[rows], branches.low[rows], np.nan)
+    shut = np.where(branches.closes[rows], 0.0, at_first)
     flow = np.where(head >= branches.low_head[rows], shut, flow)
     return np.where(head < branches.end_head[rows], np.inf, flow)
 

@@ -79,5 +79,8 @@ def load_share(
         with np.errstate(divide="ignore", invalid="ignore"):
             other = _read(pump, head, closes) / rated[:, None]
             difference = np.abs(own - other).max(axis=1)
+            cut_in = np.clip(pump.head[-1], low_head, high_head)  # between the places, where a pump starts
+            there = branch.flow_at(new, everyone, cut_in) / own_rated - _read(pump, cut_in, closes) / rated
+            difference = np.fmax(difference, np.abs(there))
         result[:, row] = np.where(known & (rated > 0), difference, np.nan)
     return result

@@ -72,7 +72,9 @@ def meet(new: BranchCurves, left: Left, installed: BranchCurves) -> Meeting:
         _solve(reader.take(plain), left, installed, plain, cell.take(plain), share, result)
     _mark_ceiling(left, np.flatnonzero(beyond), result)
     nothing = np.flatnonzero((below == 0) | (result.flow < new.low))
-    unknown = ~new.closes[nothing]
+    bottom = left.header[0]
+    short = (below == 0) & (new.low_head > bottom) & (not left.settled and left.floor >= 0)
+    unknown = (~new.closes & ~short)[nothing]
     _blank(nothing[unknown], Mark.NEW_NOT_MEASURED, result)
     shut = nothing[~unknown]
     if not left.settled:
@@ -86,7 +88,7 @@ def meet(new: BranchCurves, left: Left, installed: BranchCurves) -> Meeting:
     else:
         result.mark[shut], result.flow[shut], result.header[shut] = Mark.SHUT, 0.0, left.header[0]
         result.installed[np.ix_(shut, np.array(left.running, np.int64))] = left.installed[0]
-    past = np.flatnonzero(result.flow > new.end)
+    past = np.flatnonzero((result.flow > new.end) | short & (new.end_head > bottom))
     _blank(past, Mark.NEW_PAST_END, result)
     for node, parked in left.parked.items():
         rows = np.flatnonzero(jumping & (below - 1 == node))
@@ -149,19 +151,19 @@ class _Reader:
         """Branch head [m] by straight lines, from station to station and on both sides."""
         past, cell, t = self._cells(flow)
         head = self.head.take(cell)
-        return head + (self.head.take(cell + 1) - head) * t + self.tail * past
+        return head + (self.head.take(cell + 1) - head) * t + self.tail * np.maximum(past, 0)
 
     def heads(self, flow: Floats) -> Floats:
         """Branch head [m], continued straight on both sides to tell where a root lies."""
         past, cell, t = self._cells(flow)
-        return interpolate.value_in(self.head, self.slope, cell, t) + self.tail * past
+        return interpolate.value_in(self.head, self.slope, cell, t) + self.tail * np.maximum(past, 0)
 
     def heads_and_slopes(self, flow: Floats) -> tuple[Floats, Floats]:
         """As `heads`, with the slope [m per m3/s]."""
         past, cell, t = self._cells(flow)
         head, slope = interpolate.value_and_slope_in(self.head, self.slope, cell, t)
         slope = np.where(past == 0, np.minimum(slope, -1e-12), self.tail)
-        return head + self.tail * past, slope * self.per_flow
+        return head + self.tail * np.maximum(past, 0), slope * self.per_flow
 
     def _cells(self, flow: Floats) -> tuple[Floats, Ints, Floats]:
         """How far outside the falling side, the station left of it, and how far after that [stations]."""

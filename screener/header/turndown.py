@@ -73,4 +73,5 @@ def _flow(branches: BranchCurves, head: Floats) -> Floats:
     rows = np.arange(len(branches))
     nearest = np.clip(head, branches.end_head, np.nextafter(branches.low_head, -np.inf))
     flow = branch.flow_at(branches, rows, nearest)
+    flow = np.where(head < branches.end_head - 1e-12 * np.abs(branches.end_head), np.inf, flow)
     return np.where(head > branches.low_head * (1 + 1e-12), branch.flow_at(branches, rows, head), flow)

@@ -39,9 +39,11 @@ def slopes(*, x: Floats, y: Floats) -> Floats:
 def station_slopes(values: Floats) -> Floats:
     """Slopes of evenly spaced stations, per station; a NaN neighbour counts as the end of the data.
 
-    values : (c, k), k >= 3.  Returns (c, k), NaN where the value itself or both neighbours are NaN.
+    values : (c, k).  Returns (c, k), NaN where the value itself or both neighbours are NaN.
     """
     secant = np.diff(values, axis=1)
+    if values.shape[1] == 2:
+        return np.repeat(secant, 2, axis=1)
     size = np.abs(secant)
     before, after = secant[:, :-1], secant[:, 1:]
     slope = np.empty_like(values)

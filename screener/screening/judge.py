@@ -3,14 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import replace
+from dataclasses import fields, replace
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from screener.criteria import Criterion, Observed, criteria
-from screener.model.arrays import Codes, Floats, Ints
+from screener.criteria import Criterion, Observed, criteria, once
+from screener.model.arrays import Bools, Codes, Floats, Ints
 from screener.model.finding import Findings, Outcome, Verdict
 from screener.model.run import Run
 
@@ -63,11 +63,12 @@ def _columns(columns: Sequence[Sequence[Floats]]) -> Findings:
 
 
 def _before(criterion: Criterion, today: Run, limits: Limits) -> Floats | None:
-    """Shortfalls of the installed pumps today, (1, s, 1 + p); None where there are none."""
+    """Shortfalls of the installed pumps today, (2, 1, s, 1 + p); None where there are none."""
     if not criterion.every_pump:
         return None
     observed = criterion.observe(today, limits[criterion.name])
-    sides = _sides(observed)
+    with np.errstate(invalid="ignore"):
+        sides = _sides(observed)
     sides = np.where(observed.applies & ~np.isnan(sides), sides, -np.inf)
     return sides if (sides > 0).any() else None
 
@@ -76,93 +77,131 @@ def _sides(observed: Observed) -> Floats:
     """Shortfall below the lower and above the upper fail bound apart, (2, c, s, 1 + p)."""
     below = _shortfall(observed, observed.fail_below, np.inf)
     above = _shortfall(observed, -np.inf, observed.fail_above)
-    return np.stack(np.broadcast_arrays(below, above))
+    return np.stack(np.broadcast_arrays(below, above, observed.value)[:2])
 
 
-def _judged(criterion: Criterion, observed: Observed, run: Run, before: Floats | None) -> Sequence[Floats]:
-    """One criterion, as the columns of `Findings`, (c,) each."""
-    count = len(run.pumps) if run.header.shape[0] == len(run.pumps) else run.header.shape[0]
+def _judged(
+    criterion: Criterion, observed: Observed, run: Run, before: Floats | None
+) -> Sequence[NDArray[Any]]:
+    """One criterion, as the columns of `Findings`, (c,) each.
+
+    What fails most governs, then what is not known, then what is nearest to a caution; of places that
+    are alike the first.
+    """
+    with np.errstate(invalid="ignore"):
+        return _governing(criterion, observed, run.header, before)
+
+
+def _governing(
+    criterion: Criterion, observed: Observed, header: Floats, before: Floats | None
+) -> Sequence[NDArray[Any]]:
+    count, all_states = header.shape
+    states, observed, before = _speaking(observed, all_states, before)
     fail = _shortfall(observed, observed.fail_below, observed.fail_above)
     caution = _shortfall(observed, observed.caution_below, observed.caution_above)
-    shape = np.broadcast_shapes(fail.shape, caution.shape, np.shape(observed.applies), (count, 1, 1))
-    applies = np.broadcast_to(observed.applies, shape)
-    value = np.broadcast_to(observed.value, shape)
+    value, applies = observed.value, observed.applies
+    shape = np.broadcast_shapes(fail.shape, caution.shape, value.shape, applies.shape, (count, 1, 1))
     unknown = applies & np.isnan(value)
-    judged = applies & ~unknown
-    fail = np.where(judged, fail, -np.inf)
-    caution = np.where(judged, caution, -np.inf)
-    already = np.zeros(shape, bool)
+    missing = _highest(unknown, shape)
+    judged = applies & ~unknown if missing.any() else applies
+    fail, caution = _where(judged, fail), _where(judged, caution)
+    already = np.zeros((1, 1, 1), bool)
     if before is not None:
         sides = _sides(observed)
         already = ((before > 0) & (sides <= before + _SLACK) & (sides > 0)).any(axis=0) & (fail > 0)
         caution = np.where(already, np.maximum(caution, fail), caution)
         fail = np.where(already, -np.inf, fail)
+    most_fail, most_caution = _highest(fail, shape), _highest(caution, shape)
+    failed, warned = most_fail > _SLACK, most_caution > _SLACK
+    by_fail = failed | ~np.isfinite(most_caution)
+    open_ = missing & ~failed
+    least_fail = np.where(by_fail & ~open_, most_fail - _SLACK, np.inf)
+    least_caution = np.where(by_fail | open_, np.inf, most_caution - _SLACK)
+    governs = (fail >= once(least_fail)) | (caution >= once(least_caution))
+    if open_.any():
+        governs = governs | unknown & once(open_)
+    place = np.broadcast_to(governs, shape).reshape(count, shape[1] * shape[2]).argmax(axis=1)
+    state, pump = np.divmod(place, shape[2])
+    rows, by_state = np.arange(count), shape[1] > 1 or len(states) < all_states
 
-    def flat(values: NDArray[Any]) -> NDArray[Any]:
-        return values.reshape(count, shape[1] * shape[2])
+    def there(values: Any) -> Any:
+        if not np.ndim(values):
+            return np.full(count, values)
+        return np.broadcast_to(values, shape)[rows, state, pump]
 
-    rows = np.arange(count)
-    at_fail, at_caution = flat(fail).argmax(axis=1), flat(caution).argmax(axis=1)
-    failed, warned = flat(fail)[rows, at_fail] > _SLACK, flat(caution)[rows, at_caution] > _SLACK
-    missing = flat(unknown).any(axis=1)
-    has_caution = np.isfinite(flat(caution)[rows, at_caution])
-    place = np.where(failed | ~has_caution, at_fail, at_caution)
-    place = np.where(missing & ~failed, flat(unknown).argmax(axis=1), place)
+    seen = np.where(there(applies), there(value), np.nan)
+    limit = np.where(
+        by_fail,
+        _bound(there(observed.fail_below), there(observed.fail_above), seen),
+        _bound(there(observed.caution_below), there(observed.caution_above), seen),
+    )
     outcome = np.where(
         failed,
         Outcome.FAIL,
         np.where(missing, Outcome.NOT_ASSESSED, np.where(warned, Outcome.CAUTION, Outcome.PASS)),
     )
-    seen = np.where(flat(applies)[rows, place], flat(value)[rows, place], np.nan)
-    limit = np.where(
-        failed | ~has_caution,
-        _bound(observed, observed.fail_below, observed.fail_above, shape, rows, place, seen),
-        _bound(observed, observed.caution_below, observed.caution_above, shape, rows, place, seen),
-    )
-    state, pump = np.divmod(place, shape[2])
-    blank = (outcome == Outcome.NOT_ASSESSED) & (shape[1] > 1) & np.isnan(run.header[rows, state])
+    blank = (outcome == Outcome.NOT_ASSESSED) & by_state & np.isnan(header[rows, states[state]])
     return (
         outcome.astype(np.int8),
         seen,
         limit,
-        flat(fail)[rows, place],
-        np.where(shape[1] > 1, state, -1),
-        np.where(shape[2] > 1, pump, 0 if not criterion.every_pump else -1),
-        flat(already)[rows, place],
+        there(fail),
+        states[state] if by_state else np.full(count, -1),
+        pump if shape[2] > 1 else np.full(count, 0 if not criterion.every_pump else -1),
+        there(already),
         blank,
     )
 
 
+def _speaking(observed: Observed, count: int, before: Floats | None) -> tuple[Ints, Observed, Floats | None]:
+    """Leave out the states in which a criterion has nothing to say.
+
+    Returns the states kept, and the observation with arrays of three axes (or single figures) throughout.
+    """
+    columns = {f.name: _three_axes(getattr(observed, f.name)) for f in fields(observed)}
+    states = np.flatnonzero(columns["applies"].any(axis=(0, 2)))
+    if columns["applies"].shape[1] == 1 or not 0 < len(states) < count:
+        return np.arange(count), replace(observed, **columns), before
+
+    def kept(values: Any) -> Any:
+        return values if np.ndim(values) < 3 or values.shape[1] == 1 else values.T.take(states, axis=1).T
+
+    kept_columns = {name: kept(values) for name, values in columns.items()}
+    if before is not None and before.shape[2] > 1:
+        before = before[:, :, states]
+    return states, replace(observed, **kept_columns), before
+
+
+def _three_axes(values: Any) -> Any:
+    return values.reshape((1,) * (3 - values.ndim) + values.shape) if np.ndim(values) else values
+
+
+def _where(judged: Bools, shortfall: Floats) -> Floats:
+    return np.where(judged, shortfall, -np.inf) if shortfall.ndim else shortfall
+
+
+def _highest(values: Any, shape: tuple[int, ...]) -> Any:
+    """Highest over states and pumps, (c,)."""
+    return np.broadcast_to(values.max(axis=(1, 2)) if values.ndim else values, shape[:1])
+
+
 def _shortfall(observed: Observed, low: Floats | float, high: Floats | float) -> Floats:
-    """How far a value lies outside its bounds, relative to the bound; below 0 inside."""
+    """How far a value lies outside its bounds, relative to the bound; below 0 inside, -inf without any."""
     parts = []
     for bound, sign in ((low, -1.0), (high, 1.0)):
         if np.ndim(bound) or np.isfinite(bound):
             size = observed.scale or np.abs(bound)
             scale = np.where((size > 0) & np.isfinite(size), size, 1.0)
-            with np.errstate(invalid="ignore"):  # past the end of a curve against a bound that is not set
-                parts.append(sign * (observed.value - bound) / scale)
+            parts.append((observed.value - bound) * (sign / scale))
     if not parts:
-        return np.where(np.isnan(observed.value), np.nan, -np.inf)
+        return np.asarray(-np.inf)
     return np.asarray(parts[0] if len(parts) == 1 else np.maximum(*parts))
 
 
-def _bound(
-    observed: Observed,
-    low: Floats | float,
-    high: Floats | float,
-    shape: tuple[int, ...],
-    rows: Ints,
-    place: Ints,
-    seen: Floats,
-) -> Floats:
+def _bound(low: Floats | float, high: Floats | float, seen: Floats) -> Floats:
     """The bound nearer to being broken at the governing place, (c,); NaN where there is none."""
-    low_at, high_at = (
-        np.broadcast_to(b, shape).reshape(shape[0], shape[1] * shape[2])[rows, place] for b in (low, high)
-    )
-    with np.errstate(invalid="ignore"):
-        nearer_low = np.isfinite(low_at) & ~(np.isfinite(high_at) & (seen - low_at > high_at - seen))
-    bound = np.where(nearer_low, low_at, high_at)
+    nearer_low = np.isfinite(low) & ~(np.isfinite(high) & (seen - low > high - seen))
+    bound = np.where(nearer_low, low, high)
     return np.where(np.isfinite(bound), bound, np.nan)
 
 
