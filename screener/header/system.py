@@ -67,16 +67,32 @@ def flow(curve: SystemCurve, at_head: Floats) -> Floats:
 
     at_head : (g,) [m].  Returns (g,) [m3/s].
     """
-    last = curve.end
-    if np.isinf(last):
-        last = 1.0
-        highest = float(np.max(at_head, initial=curve.static))
-        while head(curve, last) < highest:
-            last *= 2
-    low, high = np.zeros_like(at_head), np.full_like(at_head, last)
-    for _ in range(100):
+    friction = np.maximum(at_head - curve.static, 0.0)
+    return _through_table(curve, friction) if curve.stations.size else _through_terms(curve.terms, friction)
+
+
+def _through_terms(terms: Loss, friction: Floats) -> Floats:
+    """Newton's method from the least flow that any one term alone would allow: the sum is convex and rises."""
+    alone = [
+        (friction / coefficient) ** (1 / exponent)
+        for coefficient, exponent in zip(terms.coefficient, terms.exponent, strict=True)
+    ]
+    reached = np.min(alone, axis=0)
+    for _ in range(50 if len(alone) > 1 else 0):
+        over = loss_head(terms, flow=reached) - friction
+        step = over / np.maximum(loss_slope(terms, flow=reached), 1e-300)
+        reached = np.maximum(reached - step, 0.0)
+        if (np.abs(step) <= 1e-15 * reached).all():
+            break
+    return np.asarray(reached)
+
+
+def _through_table(curve: SystemCurve, friction: Floats) -> Floats:
+    """Bisection over the table; inf past its last point."""
+    low, high = np.zeros_like(friction), np.full_like(friction, curve.end)
+    for _ in range(60):
         middle = (low + high) / 2
-        below = head_and_slope(curve, middle)[0] < at_head
+        below = head_and_slope(curve, middle)[0] < curve.static + friction
         low, high = np.where(below, middle, low), np.where(below, high, middle)
-    reached = np.where(at_head <= curve.static, 0.0, (low + high) / 2)
-    return np.where(at_head > head(curve, last), np.inf, reached)
+    reached = np.where(friction <= 0, 0.0, (low + high) / 2)
+    return np.where(curve.static + friction > head(curve, curve.end), np.inf, reached)
