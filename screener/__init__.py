@@ -21,6 +21,7 @@ from screener.version import __version__
 if TYPE_CHECKING:
     from screener.case.load import load, load_case
     from screener.catalog.load import load_catalog
+    from screener.changes.closer import look_closer
     from screener.errors import InputError, OutputError, Problem, ScreenerError, UsageError
     from screener.export.frame import to_frame
     from screener.files.shipped import demo
@@ -30,6 +31,7 @@ if TYPE_CHECKING:
 
 _HOMES = {
     "load": "screener.case.load",
+    "look_closer": "screener.changes.closer",
     "load_case": "screener.case.load",
     "load_catalog": "screener.catalog.load",
     "InputError": "screener.errors",
@@ -60,6 +62,7 @@ __all__ = [
     "load",
     "load_case",
     "load_catalog",
+    "look_closer",
     "shortlist",
     "to_frame",
     "trims",

@@ -21,7 +21,8 @@ def figures(run: Run, *, count: int, weights: Mapping[str, float]) -> Figures:
     weights : "efficiency", "shutoff_match", "load_share" [points for each percent or point]
 
     score = w_eta eta - w_0 |shutoff mismatch| - w_s load-share difference, in percent and points; the
-    useful head is the system's, so head burned at the valves of the users counts as lost.
+    useful head is the system's, so head burned at the valves of the users counts as lost. Where the new
+    pump runs at one demand only there is no load share to compare, and that term is left out for all.
     """
     conditions = run.conditions
     duty = conditions.kind == Kind.DUTY
@@ -30,7 +31,7 @@ def figures(run: Run, *, count: int, weights: Mapping[str, float]) -> Figures:
     weight = np.where(duty, conditions.share_of_hours * (hours if known_hours else 1.0), 0.0)
     pumps = np.ones(run.flow.shape[2])
     pumps[0] = count
-    power = np.where(conditions.runs, run.power, 0.0) @ pumps
+    power = (np.where(conditions.runs, run.power, 0.0) * pumps).sum(axis=2)
     delivered = np.minimum(run.total, conditions.asked)
     useful = conditions.density * GRAVITY * conditions.asked * conditions.wanted_head
     weighted_power = _weighted(power, weight)
@@ -40,6 +41,8 @@ def figures(run: Run, *, count: int, weights: Mapping[str, float]) -> Figures:
     worst = np.where(np.isnan(run.shutoff_match).all(axis=1), np.nan, worst)
     share = np.fmax.reduce(run.load_share, axis=1)
     year = SECONDS_PER_HOUR if known_hours else np.nan
+    shared = conditions.runs[:, 0] & duty
+    comparable = len(np.unique(conditions.asked[shared])) > 1
     return Figures(
         efficiency=efficiency,
         power=weighted_power / weight.sum(),
@@ -51,7 +54,7 @@ def figures(run: Run, *, count: int, weights: Mapping[str, float]) -> Figures:
         * (
             weights["efficiency"] * efficiency
             - weights["shutoff_match"] * np.abs(worst)
-            - weights["load_share"] * share
+            - weights["load_share"] * (share if comparable else 0.0)
         ),
         firm=_firm(run),
     )

@@ -30,6 +30,7 @@ def explain(
     """
     common.check_outputs(format, output, force)
     from screener.case.load import load
+    from screener.changes.closer import look_closer
     from screener.screening.one import explain as look_at
     from screener.view import explain as view
     from screener.view.data import Origin
@@ -43,6 +44,6 @@ def explain(
         if diameter is None:
             raise
         raise UsageError(f"--diameter: {error}") from error
-    common.emit(view.screen(result, Origin(loaded.files)), format, output, force)
+    common.emit(view.screen(look_closer(result), Origin(loaded.files)), format, output, force)
     if not result.passing.size:
         raise typer.Exit(ExitCode.NOTHING_PASSED)

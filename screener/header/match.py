@@ -8,6 +8,7 @@ import numpy as np
 
 from screener.header import branch
 from screener.header.branch import BranchCurves
+from screener.hydraulics import interpolate
 from screener.model.arrays import Floats, Ints
 
 _HEADS = 33
@@ -62,12 +63,12 @@ def load_share(
     Returns (c, p) [-], NaN where a rated flow is 0 or unknown or the heads are one.
     """
     everyone = np.arange(len(new))
-    own_rated = branch.flow_at(new, everyone, rated_head)
-    most = np.minimum(branch.flow_at(new, everyone, low_head), new.end)
-    least = branch.flow_at(new, everyone, high_head)
+    own_rated, most, least = branch.flow_at(new, everyone, np.stack([rated_head, low_head, high_head]))
+    most = np.minimum(most, new.end)
     flow = least[:, None] + (most - least)[:, None] * np.linspace(0, 1, _HEADS)
     inside = np.clip(np.nan_to_num(flow), new.low[:, None], new.end[:, None])
-    head = branch.head_and_slope(new, everyone[:, None], inside)[0]
+    stations = inside * ((new.head.shape[1] - 1) / new.span)[:, None]
+    head = interpolate.value(new.head, new.slope, everyone[:, None], stations)
     head = np.concatenate([np.clip(head, low_head[:, None], high_head[:, None]), high_head[:, None]], axis=1)
     with np.errstate(divide="ignore", invalid="ignore"):
         own = np.concatenate([flow, least[:, None]], axis=1) / own_rated[:, None]

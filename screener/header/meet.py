@@ -148,13 +148,13 @@ class _Reader:
         )
 
     def roughly(self, flow: Floats) -> Floats:
-        """Branch head [m] by straight lines, from station to station and on both sides."""
+        """As `heads`, by straight lines from station to station."""
         past, cell, t = self._cells(flow)
         head = self.head.take(cell)
         return head + (self.head.take(cell + 1) - head) * t + self.tail * np.maximum(past, 0)
 
     def heads(self, flow: Floats) -> Floats:
-        """Branch head [m], continued straight on both sides to tell where a root lies."""
+        """Branch head [m], level before the falling side and straight on after it, to tell where a root lies."""
         past, cell, t = self._cells(flow)
         return interpolate.value_in(self.head, self.slope, cell, t) + self.tail * np.maximum(past, 0)
 
@@ -162,7 +162,7 @@ class _Reader:
         """As `heads`, with the slope [m per m3/s]."""
         past, cell, t = self._cells(flow)
         head, slope = interpolate.value_and_slope_in(self.head, self.slope, cell, t)
-        slope = np.where(past == 0, np.minimum(slope, -1e-12), self.tail)
+        slope = np.where(past == 0, np.minimum(slope, -1e-12), np.where(past > 0, self.tail, -1e-12))
         return head + self.tail * np.maximum(past, 0), slope * self.per_flow
 
     def _cells(self, flow: Floats) -> tuple[Floats, Ints, Floats]:
@@ -297,5 +297,6 @@ def _newton(
     for place, row in enumerate(pumps, 2):
         head[place], slope = branch.head_and_slope(installed, np.full(1, row), flow[place])
         gain[place] = free[place] / np.minimum(slope, -1e-12)
-    at = (number @ (head * gain - flow) - left.taken) / (number @ gain)
-    return flow + (at - head) * gain
+    over = head - head[0]  # from here on heads are counted from that of the new pump, which may be flat
+    at = (number @ (over * gain - flow) - left.taken) / (number @ gain)
+    return flow + (at - over) * gain

@@ -72,7 +72,7 @@ def flow(curve: SystemCurve, at_head: Floats) -> Floats:
 
 
 def _through_terms(terms: Loss, friction: Floats) -> Floats:
-    """Newton's method from the least flow that any one term alone would allow: the sum is convex and rises."""
+    """Newton's method, from the least flow that any one term alone would allow; the sum is convex."""
     alone = [
         (friction / coefficient) ** (1 / exponent)
         for coefficient, exponent in zip(terms.coefficient, terms.exponent, strict=True)

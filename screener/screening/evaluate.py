@@ -31,11 +31,12 @@ def run(header: Header, pumps: Pumps, branch: Branch | None = None) -> Run:
     place = branch or case.new_pump.branch
     new = branch_curves(pumps.curves, [place])
     count, states, width = len(pumps), len(header.states), 1 + len(case.installed)
-    flow, head = np.full((count, states, width), np.nan), np.full((count, states), np.nan)
+    flow, head = _unknown(count, states, width), _unknown(count, states)
     for column, (state, left) in enumerate(zip(header.states, header.left, strict=True)):
         if state.new:
             met = meet(new, left, header.branches)
-            flow[:, column], head[:, column] = _marked(met), met.header
+            head[:, column] = met.header
+            _mark(flow[:, column], met)
         else:
             head[:, column], flow[:, column, 1:] = without_new(left, width - 1)
     shut = match.shutoff_match(new, header.branches, pump_shutoff=header.ratings.shutoff)
@@ -71,15 +72,19 @@ def today(header: Header) -> Run:
     )
 
 
-def _marked(met: Meeting) -> Floats:
-    """Flows (c, 1 + p) of one state, with the marks of `Run.flow`."""
-    new = np.where(met.mark == Mark.NEW_PAST_END, np.inf, met.flow)
-    new = np.where(met.mark == Mark.NEW_NOT_MEASURED, -np.inf, new)
-    flow = np.concatenate([new[:, None], met.installed], axis=1)
+def _unknown(count: int, *shape: int) -> Floats:
+    """NaN in the shape (count, *shape). The candidates lie side by side, as everything is done along them."""
+    return np.full((*reversed(shape), count), np.nan).T
+
+
+def _mark(flow: Floats, met: Meeting) -> None:
+    """Fill in the flows (c, 1 + p) of one state, with the marks of `Run.flow`."""
+    flow[:, 0], flow[:, 1:] = met.flow, met.installed
+    flow[met.mark == Mark.NEW_PAST_END, 0] = np.inf
+    flow[met.mark == Mark.NEW_NOT_MEASURED, 0] = -np.inf
     for mark, sign in ((Mark.INSTALLED_PAST_END, np.inf), (Mark.INSTALLED_NOT_MEASURED, -np.inf)):
         rows = np.flatnonzero(met.mark == mark)
         flow[rows, 1 + met.culprit[rows]] = sign
-    return flow
 
 
 def _figures(header: Header, pumps: Pumps, place: Branch, flow: Floats, head: Floats) -> Run:
@@ -91,10 +96,10 @@ def _figures(header: Header, pumps: Pumps, place: Branch, flow: Floats, head: Fl
     total = at[:, :, 0] * new_count + at[:, :, 1:].sum(axis=2)
     total = np.where(np.isnan(head), np.nan, total)
     branches = (place, *(pump.branch for pump in case.installed))
-    suction_loss = np.stack([loss_head(b.suction, flow=at[:, :, i]) for i, b in enumerate(branches)], axis=2)
-    discharge_loss = np.stack(
-        [loss_head(b.discharge, flow=at[:, :, i]) for i, b in enumerate(branches)], axis=2
-    )
+    suction_loss, discharge_loss = np.empty_like(at), np.empty_like(at)
+    for column, branch in enumerate(branches):
+        suction_loss[:, :, column] = loss_head(branch.suction, flow=at[:, :, column])
+        discharge_loss[:, :, column] = loss_head(branch.discharge, flow=at[:, :, column])
     lift = np.array([b.suction_head for b in branches])
     pump_head = head[:, :, None] - lift + suction_loss + discharge_loss
     everyone = (pumps.curves, case.pumps.curves)
@@ -138,21 +143,26 @@ def _figures(header: Header, pumps: Pumps, place: Branch, flow: Floats, head: Fl
 
 def _read(curves: tuple[Curves, Curves], column: str, axis: str, flow: Floats) -> Floats:
     """One column of the new and of the installed pumps' curves at flows (c, s, 1 + p)."""
-    result = np.full(flow.shape, np.nan)
+    result = np.full_like(flow, np.nan)
     new, installed = curves
-    places = (
-        (new, np.s_[:, :, 0], np.arange(len(new))[:, None]),
-        (installed, np.s_[:, :, 1:], np.arange(len(installed))),
-    )
-    for pumps, part, rows in places:
-        values, reach = getattr(pumps, column), getattr(pumps, axis)
-        if not np.isnan(values).all():
-            station = flow[part] / reach[rows] * _LAST
-            read = interpolate.value(
-                values, interpolate.station_slopes(values), rows, np.minimum(station, _LAST)
-            )
-            result[part] = np.where(station <= _LAST * (1 + 1e-12), read, np.nan)
+    for place in range(flow.shape[2]):
+        pumps, part = (installed, slice(place - 1, place)) if place else (new, slice(None))
+        values, reach = getattr(pumps, column)[part], getattr(pumps, axis)[part]
+        at, read = flow[:, :, place].T, result[:, :, place].T
+        known = np.flatnonzero(~np.isnan(values).all(axis=1))
+        if 0 < known.size < len(values):
+            read[:, known] = _stations(values[known], reach[known], at[:, known])
+        elif known.size:
+            read[:] = _stations(values, reach, at)
     return result
+
+
+def _stations(values: Floats, reach: Floats, flow: Floats) -> Floats:
+    """Curves (c, k), or one for all, at flows (s, c); NaN beyond their last station, which is at `reach`."""
+    station = flow / reach * _LAST
+    rows, slope = np.arange(len(values)), interpolate.station_slopes(values)
+    read = interpolate.value(values, slope, rows, np.minimum(station, _LAST))
+    return np.where(station <= _LAST * (1 + 1e-12), read, np.nan)
 
 
 def _nameplate(header: Header, pumps: Pumps, figures: Run) -> Floats:
@@ -175,8 +185,9 @@ def _beside(new: Ratings, installed: Ratings) -> Ratings:
     count = len(new.end)
 
     def join(name: str) -> Floats:
-        own, others = getattr(new, name), getattr(installed, name)
-        return np.concatenate([own[:, None], np.broadcast_to(others, (count, len(others)))], axis=1)
+        both = _unknown(count, 1 + len(installed.end))
+        both[:, 0], both[:, 1:] = getattr(new, name), getattr(installed, name)
+        return both
 
     return Ratings(**{f.name: join(f.name) for f in fields(Ratings)})
 
@@ -189,7 +200,7 @@ def _at_most(met: Meeting, new: BranchCurves, installed: BranchCurves) -> Floats
 
 def _start_headers(header: Header, new: BranchCurves, states: int, width: int) -> Floats:
     """Header head that the others hold while one pump starts, (c, s, 1 + p); duties only."""
-    result = np.full((len(new), states, width), np.nan)
+    result = _unknown(len(new), states, width)
     for column, (state, left) in enumerate(zip(header.states, header.left, strict=True)):
         if state.new and state.kind == Kind.DUTY and (left.settled or left.floor >= 0):
             head = without_new(left, width - 1)[0]
@@ -211,9 +222,13 @@ def _spare_heads(header: Header, new: BranchCurves, pumps: Pumps) -> Floats:
     )
     smallest = np.clip(allowed, new.low, new.end)
     rest = np.interp(smallest, header.finely.left, header.finely.header, left=np.nan, right=np.nan)
-    result = np.full((len(new), 1 + len(installed)), np.nan)
+    result = _unknown(len(new), 1 + len(installed))
     result[:, 0] = head_and_slope(new, np.arange(len(new)), smallest)[0] - rest
     for row, left in header.at_minimum.items():
+        first = int(header.alike[row])
+        if first != row and first in header.at_minimum:
+            result[:, 1 + row] = result[:, 1 + first]
+            continue
         flow = np.clip(header.minimum[row], installed.low[row], installed.end[row])
         own_head = head_and_slope(installed, np.full(1, row), flow)[0]
         result[:, 1 + row] = own_head - _at_most(meet(new, left, installed), new, installed)
@@ -224,14 +239,15 @@ def _load_share(header: Header, new: BranchCurves, head: Floats) -> Floats:
     """Load-share difference over the duties run together, (c, p)."""
     common = [place for place, state in enumerate(header.states) if state.kind == Kind.DUTY and state.new]
     low, high = head[:, common].min(axis=1), head[:, common].max(axis=1)
-    return match.load_share(
+    share = match.load_share(
         new,
         header.branches,
         low_head=low,
         high_head=high,
         rated_head=head[:, header.rated],
-        beside=np.flatnonzero(header.beside),
+        beside=np.unique(header.alike[header.beside]),
     )
+    return np.where(header.beside, share[:, header.alike], np.nan)
 
 
 def _nobody(pumps: Pumps) -> Pumps:

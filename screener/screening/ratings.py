@@ -19,7 +19,7 @@ def thermal_power(pumps: Pumps) -> Floats:
     Taking it there and not at the minimum flow itself is on the safe side: common practice, no source.
     """
     flow = _station_flows(pumps)
-    below_best = ~(flow > pumps.bep_flow[:, None]) & (flow <= pumps.curves.end[:, None])
+    below_best = flow <= np.fmin(pumps.bep_flow, pumps.curves.end)[:, None]
     power = station_power(pumps)
     return np.fmax(_largest(np.where(below_best, power, np.nan)), _read(pumps, power, pumps.bep_flow))
 
@@ -27,24 +27,24 @@ def thermal_power(pumps: Pumps) -> Floats:
 def station_power(pumps: Pumps) -> Floats:
     """Shaft power at 1000 kg/m3 at the stations, (c, k) [W]: as measured, else from the efficiency."""
     curves = pumps.curves
-    efficiency = np.where(curves.efficiency > 0, curves.efficiency, np.nan)
-    flow = _station_flows(pumps)
-    worked_out = REFERENCE_DENSITY * GRAVITY * flow * curves.head / efficiency
-    return np.where(np.isnan(curves.power) & (flow > 0), worked_out, curves.power)
+    power = curves.power.copy()
+    rows = np.flatnonzero(np.isnan(power).any(axis=1))
+    flow, head, efficiency = _station_flows(pumps)[rows], curves.head[rows], curves.efficiency[rows]
+    useful = REFERENCE_DENSITY * GRAVITY * flow * head
+    missing = np.isnan(power[rows]) & (efficiency > 0) & (flow > 0)
+    power[rows] = np.divide(useful, efficiency, out=power[rows], where=missing)
+    return power
 
 
 def ratings(pumps: Pumps, branches: BranchCurves, motor: Floats) -> Ratings:
     """Ratings of c pumps, each (c,). motor : (c,) [W] nameplates, NaN where not known or not chosen yet."""
     curves = pumps.curves
-    flow = _station_flows(pumps)
-    inside = (flow >= curves.start[:, None] * (1 - 1e-12)) & (flow <= curves.end[:, None] * (1 + 1e-12))
-    head = np.where(inside, curves.head, np.nan)
     shutoff = np.where(curves.start == 0, curves.head[:, 0], np.nan)
-    lowest = np.fmin.accumulate(head, axis=1)
+    summit, rise = _summit_and_rise(pumps)
     return Ratings(
         shutoff=shutoff,
-        summit=np.where(np.isnan(shutoff), np.nan, _largest(head)),
-        droop=_largest(head - lowest) / shutoff,
+        summit=np.where(np.isnan(shutoff), np.nan, summit),
+        droop=rise / shutoff,
         header_shutoff=branches.shutoff,
         header_summit=branches.low_head,
         operates_from=branches.low,
@@ -64,6 +64,18 @@ def ratings(pumps: Pumps, branches: BranchCurves, motor: Floats) -> Ratings:
         motor=motor,
         head_tolerance=pumps.head_tolerance,
     )
+
+
+def _summit_and_rise(pumps: Pumps) -> tuple[Floats, Floats]:
+    """Largest measured head of each curve, and its largest rise towards more flow, (c,) [m] each."""
+    curves = pumps.curves
+    summit, rise = curves.head[:, 0].copy(), np.zeros(len(pumps))
+    rows = (curves.head[:, 1:] > curves.head[:, :-1]).any(axis=1) | (curves.start > 0)
+    flow = _station_flows(pumps)[rows]
+    inside = (flow >= curves.start[rows, None] * (1 - 1e-12)) & (flow <= curves.end[rows, None] * (1 + 1e-12))
+    head = np.where(inside, curves.head[rows], np.nan)
+    summit[rows], rise[rows] = _largest(head), _largest(head - np.fmin.accumulate(head, axis=1))
+    return summit, rise
 
 
 def _station_flows(pumps: Pumps) -> Floats:
@@ -97,7 +109,7 @@ def _read(pumps: Pumps, values: Floats, flow: Floats) -> Floats:
     curves = pumps.curves
     known = (flow >= curves.start) & (flow <= curves.end)
     station = np.where(known, flow / curves.span * (STATIONS - 1), 0.0)
-    read = interpolate.value(values, interpolate.station_slopes(values), np.arange(len(pumps)), station)
+    read = interpolate.value_once(values, station, np.arange(len(pumps)))
     return np.where(known, read, np.nan)
 
 

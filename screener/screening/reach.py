@@ -25,8 +25,7 @@ class Reason(IntEnum):
     HEAD_TOO_LOW = 1
     CURVE_TOO_SHORT = 2
     TOO_LARGE = 3
-    NOT_MEASURED = 4
-    WRONG_SPEED = 5
+    WRONG_SPEED = 4
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,7 +52,11 @@ class Reach:
 
 
 def reach(table: PumpTable, needs: Sequence[Requirement], place: NewPump) -> Reach:
-    """Look at every model at its largest diameter, and find the smallest that meets all duties."""
+    """Look at every model at its largest diameter, and find the smallest that meets all duties.
+
+    Where the flow asked lies left of a curve's first measured point nothing is said against the model: the
+    states will tell.
+    """
     count = len(table)
     model = np.arange(count)
     ratio, runs = speed_ratios(table, place)
@@ -72,8 +75,8 @@ def reach(table: PumpTable, needs: Sequence[Requirement], place: NewPump) -> Rea
         head, needed = np.where(worse, given, head), np.where(worse, duty_head, needed)
         flow, shortest = np.where(worse, duty_flow, flow), np.where(worse, ratio_given, shortest)
         code = np.where(
-            np.isnan(given),
-            np.where(duty_flow > end, Reason.CURVE_TOO_SHORT, Reason.NOT_MEASURED),
+            duty_flow > end,
+            Reason.CURVE_TOO_SHORT,
             np.where(given < duty_head * (1 - 1e-9), Reason.HEAD_TOO_LOW, Reason.REACHES),
         )
         reason = np.where(reason == Reason.REACHES, code, reason)
@@ -128,6 +131,6 @@ def _smallest(
             given = head_at(
                 table, model=model, diameter=middle, speed_ratio=ratio, flow=np.full(len(model), flow)
             )
-            meets &= given >= head
+            meets &= ~(given < head)
         low, high = np.where(meets, low, middle), np.where(meets, middle, high)
     return high

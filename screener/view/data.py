@@ -22,11 +22,33 @@ from screener.view.findings import Found, found, unit_of
 
 VERDICTS = {Verdict.ACCEPTED: "accepted", Verdict.CONDITIONAL: "conditional", Verdict.REJECTED: "rejected"}
 
+CANDIDATE_KEYS = (
+    "pump",
+    "title",
+    "construction",
+    "source",
+    "verdict",
+    "diameter",
+    "wanted_diameter",
+    "speed",
+    "efficiency_at_duty",
+    "score",
+    "efficiency",
+    "power",
+    "energy_mwh_per_year",
+    "energy_kwh_per_m3",
+    "shutoff_match",
+    "load_share",
+    "lowest_flow_of_best",
+    "npsh_ratio",
+    "motor",
+)
+"""Figures of a candidate that stand in one row of a table."""
+
 REASONS = {
     Reason.HEAD_TOO_LOW: "head too low",
     Reason.CURVE_TOO_SHORT: "flow past the end of the curve",
     Reason.TOO_LARGE: "too large at the smallest impeller",
-    Reason.NOT_MEASURED: "not measured at that flow",
     Reason.WRONG_SPEED: "speed that this supply does not give",
 }
 
@@ -163,16 +185,16 @@ def _quantity(unit: str) -> str:
     return next((d for d in units.SI if unit in units.unit_names(d)), "")
 
 
-def states(bench: Bench, display: Display, run: Run, row: int = 0) -> list[dict[str, Any]]:
-    """What one candidate, or today's header, does in every state."""
+def states(bench: Bench, display: Display, run: Run, *, today: bool = False) -> list[dict[str, Any]]:
+    """What one candidate, or today's header without one, does in every state."""
+    row = 0
     case = bench.header.case
     result = []
     for place, state in enumerate(bench.header.states):
         pumps = [
             {
                 "pump": names.pump(case, column),
-                "runs": bool(run.conditions.runs[place, column])
-                and bool(column or np.isfinite(run.ratings.end[row, 0])),
+                "runs": bool(run.conditions.runs[place, column]) and not (today and column == 0),
                 "flow": display.number("flow", run.flow[row, place, column]),
                 "flow_of_best": _percent(run.flow[row, place, column] / run.ratings.bep_flow[row, column]),
                 "past_end": bool(np.isposinf(run.flow[row, place, column])),
@@ -191,7 +213,7 @@ def states(bench: Bench, display: Display, run: Run, row: int = 0) -> list[dict[
                 "duty": case.duties[state.duty].name,
                 "level": names.level(case, state),
                 "kind": Kind(state.kind).name.lower().replace("_", " "),
-                "running": names.combination(case, state.running, state.new),
+                "running": names.combination(case, state.running, 0 if today else state.new),
                 "asked": display.number("flow", state.asked),
                 "header_head": display.number("head", run.header[row, place]),
                 "total_flow": display.number("flow", run.total[row, place]),

@@ -51,6 +51,11 @@ class Display:
         """A cell of a table."""
         return Cell(self.text(quantity, value, decimals), self.number(quantity, value), tone)
 
+    def nameplate(self, value: float) -> Cell:
+        """A motor's nameplate as a cell, as it is stamped: 18.5, 110."""
+        number = self.number("power", value)
+        return Cell(DASH if number is None else f"{number:.4g}", number)
+
     def _places(self, quantity: str) -> int:
         unit = self._units[quantity]
         if quantity in ("head", "npsh"):

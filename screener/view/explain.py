@@ -6,12 +6,14 @@ from typing import Any
 
 import numpy as np
 
+from screener.changes.closer import Closer
 from screener.model.arrays import Floats
 from screener.model.finding import Outcome, Verdict
 from screener.model.run import Run
 from screener.screening.assess import Bench
 from screener.screening.one import Explained
 from screener.screening.reach import Reason
+from screener.view import closer as view_closer
 from screener.view import data, names
 from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
 from screener.view.data import Origin
@@ -25,8 +27,9 @@ VERDICT_TONES = {
 }
 
 
-def screen(result: Explained, origin: Origin) -> Screen:
+def screen(closer: Closer, origin: Origin) -> Screen:
     """One pump as blocks, its table of states, and all of it as data."""
+    result = closer.explained
     bench, candidates = result.bench, result.judged.candidates
     case = bench.header.case
     display = Display(case.display)
@@ -46,10 +49,16 @@ def screen(result: Explained, origin: Origin) -> Screen:
         *_as_set(result, display),
         Heading("EVERY CRITERION", "worst place of each"),
         _criteria(bench, display, items),
+        *view_closer.changes(bench, display, closer.changes, verdict),
+        *view_closer.corners(bench, display, closer.corners),
         Lines(_figures(result, display)),
         Lines(data.CAUTIONS, Tone.QUIET),
     ]
-    return Screen(blocks, states, _data(result, display, origin, items))
+    more = {
+        "changes": view_closer.changes_data(bench, display, closer.changes),
+        "tolerance": view_closer.corners_data(bench, display, closer.corners),
+    }
+    return Screen(blocks, states, {**_data(result, display, origin, items), **more})
 
 
 def _pump(result: Explained, display: Display) -> str:

@@ -13,7 +13,7 @@ from screener.screening.today import HeaderReport
 from screener.view import data, names, requirement
 from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
 from screener.view.data import Origin, head
-from screener.view.display import Display, percent, plain, word
+from screener.view.display import DASH, Display, percent, plain, word
 from screener.view.findings import Found, found
 
 
@@ -123,7 +123,7 @@ def _flow(bench: Bench, display: Display, flow: Any, state: State, kind: int) ->
     """Flow of one of the identical pumps that run, the marks in words."""
     values = [flow[row] for row in state.running if bench.header.alike[row] == kind]
     if not values:
-        return word("-")
+        return Cell(DASH)
     if any(np.isposinf(value) for value in values):
         return Cell(f"past {display.text('flow', bench.header.branches.end[kind])}", None, Tone.BAD)
     if any(np.isneginf(value) for value in values):
@@ -206,7 +206,7 @@ def _data(report: HeaderReport, display: Display, origin: Origin, already: list[
     header = report.bench.header
     return {
         **head(report.bench, "pump-header", origin),
-        "today": data.states(report.bench, display, report.bench.today),
+        "today": data.states(report.bench, display, report.bench.today, today=True),
         "requirement": requirement.rows(report.bench, display, report.needs, report.naive),
         "permitted": [
             {

@@ -58,7 +58,7 @@ def screen(result: Shortlist, origin: Origin, *, top: int = TOP, everything: boo
     blocks.append(Lines(_notes(result, display), Tone.QUIET))
     blocks.append(Lines(data.CAUTIONS, Tone.QUIET))
     flat = _flat(result, display)
-    return Screen(blocks, flat, _data(result, display, origin, groups))
+    return Screen(blocks, flat, _data(result, display, origin, groups, everything=everything))
 
 
 def _requirement(result: Shortlist, display: Display) -> str:
@@ -152,7 +152,7 @@ def _notes(result: Shortlist, display: Display) -> list[str]:
 def _flat(result: Shortlist, display: Display) -> Table:
     """Every candidate shown, one row each, every figure: what the csv holds."""
     items = [data.candidate(result, display, row) for row in range(len(result.best))]
-    keys = [key for key, value in items[0].items() if not isinstance(value, list | dict)] if items else []
+    keys = data.CANDIDATE_KEYS
     columns = [
         Column("rank", "rank"),
         *(Column(key, key, FLAT_UNITS.get(key, "")) for key in keys),
@@ -182,7 +182,9 @@ FLAT_UNITS = {
 }
 
 
-def _data(result: Shortlist, display: Display, origin: Origin, groups: dict[Verdict, Any]) -> dict[str, Any]:
+def _data(
+    result: Shortlist, display: Display, origin: Origin, groups: dict[Verdict, Any], *, everything: bool
+) -> dict[str, Any]:
     bench, reason = result.bench, result.reach.reason
     case = bench.header.case
     listed = {
@@ -206,6 +208,7 @@ def _data(result: Shortlist, display: Display, origin: Origin, groups: dict[Verd
             },
         },
         **listed,
+        "out_of_reach": why_not.unreached_data(result, display) if everything else [],
         "references": [
             {
                 "same_as": case.installed[installed].tag,
@@ -220,7 +223,7 @@ def _data(result: Shortlist, display: Display, origin: Origin, groups: dict[Verd
             for item in found(bench, display, result.inherited, 0)
             if item.outcome in (Outcome.FAIL, Outcome.CAUTION)
         ],
-        "today": data.states(bench, display, bench.today),
+        "today": data.states(bench, display, bench.today, today=True),
         "limits": data.limits(bench, display),
         "notes": _notes(result, display),
     }

@@ -128,7 +128,7 @@ def _measures(result: Trims, display: Display) -> list[tuple[str, str, Callable[
         (
             "motor",
             f"motor, {display.unit('power')}",
-            lambda row: display.cell("power", candidates.motor[row]),
+            lambda row: display.nameplate(candidates.motor[row]),
         ),
         ("efficiency", "system efficiency, %", lambda row: percent(float(f.efficiency[row]), 1)),
         ("score", "score", lambda row: plain(float(f.score[row]), 1)),

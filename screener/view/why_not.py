@@ -163,6 +163,22 @@ def _unreached(result: Shortlist, display: Display) -> Table:
     return Table(columns, rows, ["At the largest impeller on offer, the duty that it misses most."])
 
 
+def unreached_data(result: Shortlist, display: Display) -> list[dict[str, Any]]:
+    """Every model that cannot reach the duties, at its largest impeller and the duty it misses most."""
+    r = result.reach
+    return [
+        {
+            "pump": result.table.ids[int(model)],
+            "reason": data.REASONS[Reason(int(r.reason[model]))],
+            "flow": display.number("flow", r.flow[model]),
+            "head": display.number("head", r.head[model]),
+            "needed": display.number("head", r.needed[model]),
+            "end": display.number("flow", r.end[model]),
+        }
+        for model in np.flatnonzero(r.reason != Reason.REACHES)
+    ]
+
+
 def ranked_cells(candidates: Candidates, display: Display, row: int) -> list[Cell]:
     """The figures of one candidate, as cells of the ranked table."""
     f = candidates.figures
@@ -177,7 +193,7 @@ def ranked_cells(candidates: Candidates, display: Display, row: int) -> list[Cel
         percent(float(f.share[row]), 1),
         percent(float(candidates.lowest_share[row])),
         plain(float(candidates.npsh[row]), 2),
-        display.cell("power", candidates.motor[row]),
+        display.nameplate(candidates.motor[row]),
         plain(energy / 3.6e6 / volume, 4),
         percent(float(np.fmin.reduce(f.firm[row]))) if f.firm.shape[1] else Cell("-"),
         plain(cautions, 0),

@@ -43,7 +43,6 @@ REASONS = {
     Reason.HEAD_TOO_LOW: entry(curve(0.2, 39.0)),
     Reason.CURVE_TOO_SHORT: entry(curve(0.2, 50.0, end=0.04)),
     Reason.TOO_LARGE: entry(curve(0.2, 60.0), minimum=0.19),  # 0.95^2 * 60 - 10 = 44.15 m > 37.5 m
-    Reason.NOT_MEASURED: entry(curve(0.2, 50.0, start=0.06), minimum=0.16),
     Reason.WRONG_SPEED: entry(curve(0.2, 50.0), speed=1180.0),  # at 50 Hz: 1500 less 21 %
 }
 

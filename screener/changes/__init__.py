@@ -1,0 +1,1 @@
+"""What re-runs the pipeline with something changed."""
