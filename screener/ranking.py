@@ -9,14 +9,15 @@ import numpy as np
 from screener.hydraulics.constants import GRAVITY
 from screener.model.arrays import Floats
 from screener.model.finding import Figures
-from screener.model.run import Kind, Run
+from screener.model.run import Conditions, Kind, Run
 
 SECONDS_PER_HOUR = 3600.0
 
 
-def figures(run: Run, *, count: int, weights: Mapping[str, float]) -> Figures:
+def figures(run: Run, today: Run, *, count: int, weights: Mapping[str, float]) -> Figures:
     """Energy, match and score of c candidates.
 
+    today   : the same states without the new pump
     count   : identical new pumps
     weights : "efficiency", "shutoff_match", "load_share" [points for each percent or point]
 
@@ -56,7 +57,7 @@ def figures(run: Run, *, count: int, weights: Mapping[str, float]) -> Figures:
             - weights["shutoff_match"] * np.abs(worst)
             - weights["load_share"] * (share if comparable else 0.0)
         ),
-        firm=_firm(run),
+        firm=_firm(run, today),
     )
 
 
@@ -64,7 +65,23 @@ def _weighted(values: Floats, weight: Floats) -> Floats:
     return np.asarray((values[:, weight > 0] * weight[weight > 0]).sum(axis=1))
 
 
-def _firm(run: Run) -> Floats:
-    """Share of the duty that is delivered after each trip, (c, t)."""
-    trips = run.conditions.kind == Kind.TRIP
-    return np.asarray(np.minimum(run.total[:, trips] / run.conditions.asked[trips], 1.0))
+def trips(conditions: Conditions) -> list[tuple[int, bool]]:
+    """States after each single-pump trip, in order, and whether it is the new pump that is lost."""
+    after = conditions.kind == Kind.TRIP
+    whole = conditions.open & ~after & conditions.runs[:, 0]
+    return [(int(place), False) for place in np.flatnonzero(after)] + [
+        (int(place), True) for place in np.flatnonzero(whole)
+    ]
+
+
+def _firm(run: Run, today: Run) -> Floats:
+    """Share of the duty that is delivered after each trip, (c, t); `trips` says which.
+
+    Losing the new pump leaves the header as it is today, wide open.
+    """
+    columns = [
+        np.broadcast_to((today if lost else run).total[:, place], len(run.total))
+        / run.conditions.asked[place]
+        for place, lost in trips(run.conditions)
+    ]
+    return np.minimum(np.stack(columns, axis=1), 1.0) if columns else np.empty((len(run.total), 0))

@@ -14,6 +14,8 @@ from screener.model.case import Control, Duty
 MOST_COMBINATIONS = 500
 """Combinations in one duty: a guard against a slip of the pen, far above any real header."""
 
+HOURS_IN_A_YEAR = 8784
+
 Combinations = tuple[tuple[tuple[int, ...], ...], tuple[bool, ...]]
 
 
@@ -49,6 +51,14 @@ def duties(
                 rated=row == rated,
             )
         )
+    hours = sum(duty.hours for duty in found if not math.isnan(duty.hours))
+    if hours > HOURS_IN_A_YEAR:
+        last = max(row for row, node in enumerate(nodes) if "hours" in node)
+        q.bad(
+            ("duty", last, "hours"),
+            f"the duties add up to {hours:g} h",
+            f"at most {HOURS_IN_A_YEAR} h a year",
+        )
     used = {duty.liquid for duty in found}
     for row, name in enumerate(liquids):
         if -1 not in used and liquids.index(name) not in used:
@@ -70,21 +80,24 @@ def _running(q: Quantities, node: Node | Sequence[str], path: KeyPath, tags: Seq
     if not isinstance(node, Mapping):
         return _listed(q, node, path, tags)
     count, new = node["any"], node["new"]
-    if count > len(tags):
-        q.bad(
-            (*path, "any"), f"any {count} pumps, but only {len(tags)} are installed", f"at most {len(tags)}"
-        )
+    named = node.get("of", tags)
+    _once(q, named, (*path, "of"))
+    among = [lookup(q, tag, tags, (*path, "of", i), "pump") for i, tag in enumerate(named)]
+    if count > len(among):
+        there = "named" if "of" in node else "installed"
+        what = f"any {count} pumps, but only {len(among)} are {there}"
+        q.bad((*path, "any"), what, f"at most {len(among)}")
     elif count == 0 and not new:
         q.bad(path, "no pump runs", "any above 0, or new = true")
-    elif math.comb(len(tags), count) > MOST_COMBINATIONS:
-        what = f"any {count} of {len(tags)} pumps is {math.comb(len(tags), count)} combinations"
+    elif math.comb(len(among), count) > MOST_COMBINATIONS:
+        what = f"any {count} of {len(among)} pumps is {math.comb(len(among), count)} combinations"
         q.bad(
             (*path, "any"),
             what,
             f"at most {MOST_COMBINATIONS}: list the tags of the combination that matters",
         )
     else:
-        found = tuple(combinations(range(len(tags)), count))
+        found = tuple(combinations(sorted(among), count))
         return found, (new,) * len(found)
     return (), ()
 

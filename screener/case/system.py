@@ -117,10 +117,15 @@ def _fitted(
         q.bad((*path, "flow"), "every flow is 0", "at least one above 0")
         return Loss(), math.nan
     coefficient = float(flow @ (head - static) / (flow @ flow))
+    order = np.argsort(flow)
+    falls = order[1:][np.diff(head[order]) < 0]
     if coefficient <= 0:
         q.bad(
             (*path, "head"),
             f"the measured heads are no higher than the static head of {units.format_value(static, 'm', 2)}",
             "the head at the header, static part included",
         )
+    elif falls.size:
+        what = f"the measured head {node['head'][falls[0]]} is lower than at the next smaller flow"
+        q.bad((*path, "head", int(falls[0])), what, "a system curve rises with flow")
     return Loss((coefficient,), (exponent,)), float(np.abs(head - static - coefficient * flow).max())

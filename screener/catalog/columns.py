@@ -48,6 +48,7 @@ class Columns:
         density[np.isnan(density)] = REFERENCE_DENSITY
         power = frozen(power * (REFERENCE_DENSITY / density)[self.owner])
         self._check_rising(flow)
+        self._check_percent(efficiency)
         self._check_power(flow, head, efficiency, power)
         self._check_best(flow, bep_flow)
         for c, (a, b) in enumerate(zip(self.first[:-1].tolist(), self.first[1:].tolist(), strict=True)):
@@ -100,6 +101,13 @@ class Columns:
             self.quantities.bad(
                 self._path(curve, "flow", k), f"flow {here} comes after {before}", "flows must rise"
             )
+
+    def _check_percent(self, efficiency: Floats) -> None:
+        """Efficiencies are percent: a curve that never reaches 1 % was given as fractions."""
+        best = np.fmax.reduceat(efficiency, self.first[:-1])
+        for c in np.flatnonzero((best > 0) & (best <= 0.01)):
+            what = f"no efficiency is above {best[c] * 100:.2g} %"
+            self.quantities.bad(self._path(int(c), "efficiency"), what, "percent: 72, not 0.72")
 
     def _check_power(self, flow: Floats, head: Floats, efficiency: Floats, power: Floats) -> None:
         """Power says what efficiency says: the worst point of each curve where it does not."""

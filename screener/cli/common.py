@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import difflib
+import os
 import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
@@ -33,6 +34,10 @@ Outputs = Annotated[
     ),
 ]
 Force = Annotated[bool, typer.Option("--force", help="Replace files that exist.")]
+
+
+PIPED_WIDTH = 120
+"""Characters of a line where the screen goes to a file or another command, and COLUMNS says nothing."""
 
 
 def new_app() -> typer.Typer:
@@ -74,7 +79,8 @@ def emit(screen: Screen, name: str, outputs: list[Path] | None, force: bool) -> 
 
         from screener.export import terminal
 
-        console = Console(highlight=False, soft_wrap=True)
+        piped = not sys.stdout.isatty() and "COLUMNS" not in os.environ
+        console = Console(highlight=False, soft_wrap=True, width=PIPED_WIDTH if piped else None)
         with console.capture() as text:
             terminal.show(screen, console)
         sys.stdout.write(text.get())
@@ -86,7 +92,8 @@ def row_of(catalog: PumpTable, pump: str) -> int:
     """Row of a pump in the catalog."""
     if pump in catalog.ids:
         return catalog.ids.index(pump)
-    near = difflib.get_close_matches(pump, catalog.ids, 3)
+    alike = [name for name in catalog.ids if name.casefold() == pump.casefold()]
+    near = alike or difflib.get_close_matches(pump, catalog.ids, 3)
     hint = f"did you mean {' or '.join(near)}?" if near else f"the catalog holds {len(catalog)} pumps"
     raise UsageError(f'there is no pump "{pump}" in the catalog ({hint})')
 

@@ -142,7 +142,10 @@ def read_limits(
                     problems.append(((name, key), f'{name} has no limit "{key}"', hint))
                     continue
                 try:
-                    limits[name][key] = _limit(value, known[name].limits[key].unit or known[name].unit)
+                    limit = known[name].limits[key]
+                    limits[name][key] = _limit(value, limit.unit or known[name].unit)
+                    if limit.default > 0 and limits[name][key] <= 0:
+                        problems.append(((name, key), f"{value} is not above 0", "a positive limit"))
                 except ValueError as error:
                     problems.append(
                         ((name, key), getattr(error, "what", str(error)), getattr(error, "hint", ""))

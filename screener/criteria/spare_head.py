@@ -6,7 +6,7 @@ from collections.abc import Mapping
 
 import numpy as np
 
-from screener.criteria import Criterion, Limit, Observed, beside, everywhere, once
+from screener.criteria import Criterion, Limit, Observed, everywhere, once
 from screener.model.run import Run
 
 
@@ -15,12 +15,11 @@ def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     ratings = run.ratings
     value = run.spare_head / ratings.shutoff
     tolerance = ratings.head_tolerance
-    others = np.where(beside(run), tolerance, -np.inf).max(axis=1)
+    runs = np.tile(run.conditions.runs[run.conditions.lowest].any(axis=0), (len(run.pumps), 1))
+    others = np.where(runs[:, 1:], tolerance[:, 1:], -np.inf).max(axis=1, initial=-np.inf)
     needed = tolerance[:, 0] + others
     needed = np.where(np.isfinite(needed), needed, limits["unknown_tolerance"])
-    applies = beside(run)
-    applies[:, 0] = True
-    return Observed(everywhere(value), everywhere(applies), caution_below=once(needed), scale=1.0)
+    return Observed(everywhere(value), everywhere(runs), caution_below=once(needed), scale=1.0)
 
 
 CRITERION = Criterion(

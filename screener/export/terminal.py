@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from screener.export.clean import clean
-from screener.view.blocks import Block, Cell, Column, Heading, Lines, Pairs, Screen, Table, Tone
+from screener.view.blocks import Cell, Column, Heading, Lines, Pairs, Screen, Table, Tone
 
 if TYPE_CHECKING:
     from rich.console import Console
@@ -20,25 +20,30 @@ NARROWEST = 14
 
 
 def show(screen: Screen, console: Console) -> None:
-    """Print a screen."""
+    """Print a screen, and say at its end where columns were left out for want of width."""
+    left_out = 0
     for number, block in enumerate(screen.blocks):
         if number and isinstance(block, Heading):
             console.print()
-        _print(block, console)
+        if isinstance(block, Table):
+            left_out += _table(block, console)
+        else:
+            _print(block, console)
+    if left_out:
+        more = f"{left_out} columns did not fit this width; a wider terminal or --format csv shows them."
+        _paragraph(console, more, indent=0, style=STYLES[Tone.QUIET])
 
 
-def _print(block: Block, console: Console) -> None:
+def _print(block: Heading | Lines | Pairs, console: Console) -> None:
     if isinstance(block, Heading):
         _heading(block, console)
     elif isinstance(block, Lines):
         for line in block.lines:
             _paragraph(console, line, indent=block.indent, style=STYLES[block.tone])
-    elif isinstance(block, Pairs):
+    else:
         room = max(_length(clean(label)) for label, _ in block.pairs) + 2 + GAP
         for label, text in block.pairs:
             _paragraph(console, text, indent=room, style="", label=f"  {label}")
-    else:
-        _table(block, console)
 
 
 def _heading(block: Heading, console: Console) -> None:
@@ -65,7 +70,8 @@ def _paragraph(console: Console, text: str, *, indent: int, style: str, label: s
         console.print(Text.assemble((before, "bold"), room, (line.plain.rstrip(), style)))
 
 
-def _table(block: Table, console: Console) -> None:
+def _table(block: Table, console: Console) -> int:
+    """Print a table; returns how many of its columns did not fit."""
     from rich.text import Text
 
     places = fitting(block.columns, block.rows, console.width)
@@ -92,6 +98,7 @@ def _table(block: Table, console: Console) -> None:
         console.print(line([(row[place].text, STYLES[row[place].tone]) for place in places]))
     for note in block.note:
         _paragraph(console, note, indent=0, style=STYLES[Tone.QUIET])
+    return sum(column.rank < 9 for column in block.columns) - len(places)
 
 
 def _widths(block: Table, places: Sequence[int], width: int) -> dict[int, int]:

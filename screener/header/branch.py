@@ -129,12 +129,11 @@ def flow_at(branches: BranchCurves, rows: Ints, head: Floats) -> Floats:
     base, per_flow = rows * STATIONS, _LAST / branches.span[rows]
     first, last = branches.low[rows] * per_flow, branches.end[rows] * per_flow
     stations, slopes = branches.head.ravel(), branches.slope.ravel()
-    cell, after = first.astype(np.int64), np.minimum(np.ceil(last).astype(np.int64), _LAST)
-    for _ in range(_LAST.bit_length()):
-        middle = (cell + after) // 2
-        above = (stations.take(base + middle) > head) & (middle > cell)
-        cell, after = np.where(above, middle, cell), np.where(above, after, np.maximum(middle, cell + 1))
-    cell = np.minimum(cell, _LAST - 1)
+    cell = first.astype(np.int64)
+    for bit in reversed(range(_LAST.bit_length())):
+        probe = np.minimum(cell + 2**bit, _LAST)
+        cell = np.where(stations.take(base + probe) > head, probe, cell)
+    cell = np.minimum(cell, np.minimum(np.ceil(last).astype(np.int64), _LAST) - 1)
     low, high = np.maximum(first - cell, 0.0), np.minimum(last - cell, 1.0)
     place = _in_cell(interpolate.polynomial(stations, slopes, base + cell), head, low, high)
     flow = (cell + place) / per_flow
@@ -147,15 +146,21 @@ def flow_at(branches: BranchCurves, rows: Ints, head: Floats) -> Floats:
 def _in_cell(cubic: tuple[Floats, Floats, Floats, Floats], head: Floats, low: Floats, high: Floats) -> Floats:
     """Where between `low` and `high` a falling cubic comes to a head: Newton's method within a bracket."""
     y0, c1, c2, c3 = cubic
-    place = (low + high) / 2
+    fall = np.maximum(-(c1 + c2 + c3), 1e-100)
+    start = np.minimum(np.maximum((y0 - head) / fall, low), high)
+    columns = np.stack([y0 - head, c1, c2, c3, low, high, start, 1e-15 * np.abs(head)]).reshape(8, -1)
+    result, work = start.ravel(), np.arange(start.size)
     for _ in range(60):
-        over = ((c3 * place + c2) * place + c1) * place + (y0 - head)
+        above, c1, c2, c3, low, high, place, noise = columns
+        over = ((c3 * place + c2) * place + c1) * place + above
         low, high = np.where(over > 0, place, low), np.where(over > 0, high, place)
-        slope = (3 * c3 * place + 2 * c2) * place + c1
-        newton = place - over / np.minimum(slope, -1e-300)
+        newton = place - over / np.minimum((3 * c3 * place + 2 * c2) * place + c1, -1e-100)
         following = np.where((newton >= low) & (newton <= high), newton, (low + high) / 2)
-        done = (np.abs(following - place) <= 1e-13) | (np.abs(over) <= 1e-15 * np.abs(head))
-        place = following
-        if done.all():
+        there = np.abs(over) <= noise
+        result[work] = np.where(there, place, following)
+        rest = np.flatnonzero((np.abs(following - place) > 1e-13) & ~there)
+        if not rest.size:
             break
-    return place
+        columns[4:7] = low, high, following
+        columns, work = columns[:, rest], work[rest]
+    return result.reshape(start.shape)

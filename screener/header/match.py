@@ -57,23 +57,24 @@ def load_share(
 
     Over the header heads at which they run together, `low_head` at the largest demand to `high_head` at
     the smallest; each flow is taken relative to the pump's flow at `rated_head`. A pump held shut
-    keeps 0. Equal shapes of branch curve give 0 whatever the sizes.
+    keeps 0. Equal shapes of branch curve give 0 whatever the sizes; more than 1 is told as 1.
 
     low_head, high_head, rated_head : (c,) [m];  beside : rows of the installed pumps it runs with
     Returns (c, p) [-], NaN where a rated flow is 0 or unknown or the heads are one.
     """
-    everyone = np.arange(len(new))
-    own_rated, most, least = branch.flow_at(new, everyone, np.stack([rated_head, low_head, high_head]))
-    most = np.minimum(most, new.end)
-    flow = least[:, None] + (most - least)[:, None] * np.linspace(0, 1, _HEADS)
-    inside = np.clip(np.nan_to_num(flow), new.low[:, None], new.end[:, None])
-    stations = inside * ((new.head.shape[1] - 1) / new.span)[:, None]
-    head = interpolate.value(new.head, new.slope, everyone[:, None], stations)
-    head = np.concatenate([np.clip(head, low_head[:, None], high_head[:, None]), high_head[:, None]], axis=1)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        own = np.concatenate([flow, least[:, None]], axis=1) / own_rated[:, None]
     result = np.full((len(new), len(installed)), np.nan)
-    known = (high_head > low_head) & np.isfinite(own_rated) & (own_rated > 0) & np.isfinite(least)
+    flows = branch.flow_at(new, np.arange(len(new)), np.stack([rated_head, low_head, high_head]))
+    sound = np.isfinite(flows[0]) & (flows[0] > 0) & np.isfinite(flows[2])
+    rows = np.flatnonzero((high_head > low_head) & sound)
+    own_rated, most, least = flows[:, rows]
+    rated_head, low_head, high_head = rated_head[rows], low_head[rows], high_head[rows]
+    flow = least[:, None] + (np.minimum(most, new.end[rows]) - least)[:, None] * np.linspace(0, 1, _HEADS)
+    inside = np.minimum(np.fmax(flow, new.low[rows, None]), new.end[rows, None])
+    stations = inside * ((new.head.shape[1] - 1) / new.span[rows])[:, None]
+    head = interpolate.value(new.head, new.slope, rows[:, None], stations)
+    head = np.minimum(np.maximum(head, low_head[:, None]), high_head[:, None])
+    head = np.concatenate([head, high_head[:, None]], axis=1)
+    own = np.concatenate([flow, least[:, None]], axis=1) / own_rated[:, None]
     for row in beside:
         pump, closes = inverse(installed, int(row)), bool(installed.closes[row])
         rated = _read(pump, rated_head, closes)
@@ -81,7 +82,7 @@ def load_share(
             other = _read(pump, head, closes) / rated[:, None]
             difference = np.abs(own - other).max(axis=1)
             cut_in = np.clip(pump.head[-1], low_head, high_head)  # between the places, where a pump starts
-            there = branch.flow_at(new, everyone, cut_in) / own_rated - _read(pump, cut_in, closes) / rated
+            there = branch.flow_at(new, rows, cut_in) / own_rated - _read(pump, cut_in, closes) / rated
             difference = np.fmax(difference, np.abs(there))
-        result[:, row] = np.where(known & (rated > 0), difference, np.nan)
+        result[rows, row] = np.where(rated > 0, np.minimum(difference, 1.0), np.nan)
     return result

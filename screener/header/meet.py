@@ -154,7 +154,7 @@ class _Reader:
         return head + (self.head.take(cell + 1) - head) * t + self.tail * np.maximum(past, 0)
 
     def heads(self, flow: Floats) -> Floats:
-        """Branch head [m], level before the falling side and straight on after it, to tell where a root lies."""
+        """Branch head [m], level before the falling side and straight on after it, where no root counts."""
         past, cell, t = self._cells(flow)
         return interpolate.value_in(self.head, self.slope, cell, t) + self.tail * np.maximum(past, 0)
 
@@ -299,4 +299,4 @@ def _newton(
         gain[place] = free[place] / np.minimum(slope, -1e-12)
     over = head - head[0]  # from here on heads are counted from that of the new pump, which may be flat
     at = (number @ (over * gain - flow) - left.taken) / (number @ gain)
-    return flow + (at - over) * gain
+    return np.asarray(flow + (at - over) * gain)

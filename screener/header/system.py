@@ -73,10 +73,11 @@ def flow(curve: SystemCurve, at_head: Floats) -> Floats:
 
 def _through_terms(terms: Loss, friction: Floats) -> Floats:
     """Newton's method, from the least flow that any one term alone would allow; the sum is convex."""
-    alone = [
-        (friction / coefficient) ** (1 / exponent)
-        for coefficient, exponent in zip(terms.coefficient, terms.exponent, strict=True)
-    ]
+    with np.errstate(over="ignore"):  # a term too small to matter allows any flow
+        alone = [
+            (friction / coefficient) ** (1 / exponent)
+            for coefficient, exponent in zip(terms.coefficient, terms.exponent, strict=True)
+        ]
     reached = np.min(alone, axis=0)
     for _ in range(50 if len(alone) > 1 else 0):
         over = loss_head(terms, flow=reached) - friction

@@ -35,19 +35,22 @@ def trimmed(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Flo
     nearest = np.where(weight < 0.5, cut_low, cut_high)
     lost = table.efficiency_loss[model] * np.where(low == high, np.maximum(1 - nearest, 0), 0)
     ratio = speed_ratio
-    between = np.flatnonzero(weight > 0)
 
     def blend(values: Floats, scale_low: Floats, scale_high: Floats, either: bool = False) -> Floats:
         """Rows of the tests, scaled, and mixed where a test lies on either side."""
+        result = np.empty((len(low), *values.shape[1:]))
         shape = (-1,) + (1,) * (values.ndim - 1)
-        result = values.take(low, axis=0) * scale_low.reshape(shape)
-        if between.size:
-            below, share = result[between], weight[between].reshape(shape)
-            above = values.take(high[between], axis=0) * scale_high[between].reshape(shape)
-            mixed = (1 - share) * below + share * above
-            if either:  # where one of them was not measured, the other holds
-                mixed = np.where(np.isnan(below), above, np.where(np.isnan(above), below, mixed))
-            result[between] = mixed
+        for rows in interpolate.blocks(len(low)):
+            part, share = result[rows], weight[rows]
+            np.multiply(values.take(low[rows], axis=0), scale_low[rows].reshape(shape), out=part)
+            between = np.flatnonzero(share > 0)
+            if between.size:
+                below, share = part[between], share[between].reshape(shape)
+                above = values.take(high[rows][between], axis=0) * scale_high[rows][between].reshape(shape)
+                mixed = (1 - share) * below + share * above
+                if either:  # where one of them was not measured, the other holds
+                    mixed = np.where(np.isnan(below), above, np.where(np.isnan(above), below, mixed))
+                part[between] = mixed
         return result
 
     same = np.ones(len(model))

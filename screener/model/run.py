@@ -88,7 +88,9 @@ class Ratings:
 class Conditions:
     """What holds in each state whatever the candidate, (s,) but where said.
 
-    duty, kind, rated : int, `Kind`, and whether it is the state of the rated duty
+    duty, kind : int, `Kind`
+    rated, lowest : whether it is the state of the rated duty, and of the lowest duty that the new pump shares
+    open      : nothing is throttled
     asked     : [m3/s] flow of the duty
     wanted_head : [m] header head at which the system takes that flow
     density   : [kg/m3];  heat_capacity : [J/(kg K)];  vapour_pressure : [Pa]
@@ -100,6 +102,8 @@ class Conditions:
     duty: Ints
     kind: Codes
     rated: Bools
+    lowest: Bools
+    open: Bools
     asked: Floats
     wanted_head: Floats
     density: Floats

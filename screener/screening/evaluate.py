@@ -46,7 +46,7 @@ def run(header: Header, pumps: Pumps, branch: Branch | None = None) -> Run:
         result,
         ratings=_beside(own, header.ratings),
         start_header=_start_headers(header, new, states, width),
-        spare_head=_spare_heads(header, new, pumps),
+        spare_head=_spare_heads(header, new, pumps, own),
         shutoff_match=np.where(header.beside, shut, np.nan),
         load_share=_load_share(header, new, head),
     )
@@ -214,11 +214,14 @@ def _start_headers(header: Header, new: BranchCurves, states: int, width: int) -
     return result
 
 
-def _spare_heads(header: Header, new: BranchCurves, pumps: Pumps) -> Floats:
+def _spare_heads(header: Header, new: BranchCurves, pumps: Pumps, own: Ratings) -> Floats:
     """Head that each pump may lose at the lowest common duty, (c, 1 + p) [m]."""
     installed = header.branches
     allowed = smallest_flow(
-        pumps, heat_capacity=header.heat_capacity, temperature_rise=header.temperature_rise
+        pumps,
+        heat_capacity=header.heat_capacity,
+        temperature_rise=header.temperature_rise,
+        power=own.thermal_power,
     )
     smallest = np.clip(allowed, new.low, new.end)
     rest = np.interp(smallest, header.finely.left, header.finely.header, left=np.nan, right=np.nan)
@@ -236,18 +239,27 @@ def _spare_heads(header: Header, new: BranchCurves, pumps: Pumps) -> Floats:
 
 
 def _load_share(header: Header, new: BranchCurves, head: Floats) -> Floats:
-    """Load-share difference over the duties run together, (c, p)."""
-    common = [place for place, state in enumerate(header.states) if state.kind == Kind.DUTY and state.new]
-    low, high = head[:, common].min(axis=1), head[:, common].max(axis=1)
-    share = match.load_share(
-        new,
-        header.branches,
-        low_head=low,
-        high_head=high,
-        rated_head=head[:, header.rated],
-        beside=np.unique(header.alike[header.beside]),
-    )
-    return np.where(header.beside, share[:, header.alike], np.nan)
+    """Load-share difference over the duties that the new and an installed pump run together, (c, p)."""
+    together: dict[tuple[int, ...], list[int]] = {}
+    for kind in np.unique(header.alike[header.beside]):
+        places = (
+            place
+            for place, state in enumerate(header.states)
+            if state.kind == Kind.DUTY and state.new and kind in header.alike[list(state.running)]
+        )
+        together.setdefault(tuple(places), []).append(int(kind))
+    result = _unknown(len(new), len(header.alike))
+    for common, kinds in together.items():
+        share = match.load_share(
+            new,
+            header.branches,
+            low_head=head[:, common].min(axis=1),
+            high_head=head[:, common].max(axis=1),
+            rated_head=head[:, header.rated],
+            beside=np.array(kinds),
+        )
+        result = np.fmax(result, share)
+    return np.where(header.beside, result[:, header.alike], np.nan)
 
 
 def _nobody(pumps: Pumps) -> Pumps:

@@ -106,7 +106,7 @@ def prepare(case: Case, *, temperature_rise: float) -> Header:
         lowest=lowest,
         rated=rated,
         minimum=minimum,
-        conditions=_conditions(case, found, rated),
+        conditions=_conditions(case, found, rated, lowest),
         ratings=ratings(case.pumps, branches, np.array([pump.motor for pump in case.installed])),
         alike=alike,
         beside=np.array(
@@ -117,7 +117,7 @@ def prepare(case: Case, *, temperature_rise: float) -> Header:
     )
 
 
-def _conditions(case: Case, found: tuple[State, ...], rated: int) -> Conditions:
+def _conditions(case: Case, found: tuple[State, ...], rated: int, lowest: int) -> Conditions:
     liquids = [case.liquids[case.duties[state.duty].liquid] for state in found]
     levels = [case.levels[state.level] for state in found]
     curves = [system_curve(case.system, level, liquid) for level, liquid in zip(levels, liquids, strict=True)]
@@ -133,6 +133,8 @@ def _conditions(case: Case, found: tuple[State, ...], rated: int) -> Conditions:
         duty=frozen([state.duty for state in found], np.int64),
         kind=frozen([state.kind for state in found], np.int8),
         rated=frozen(np.arange(len(found)) == rated, np.bool_),
+        lowest=frozen(np.arange(len(found)) == lowest, np.bool_),
+        open=frozen([not state.throttled for state in found], np.bool_),
         asked=frozen([state.asked for state in found]),
         wanted_head=frozen(
             [system.head(curve, state.asked) for curve, state in zip(curves, found, strict=True)]

@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from screener.criteria import Criterion, Observed, criteria, once
+from screener.criteria import Criterion, Observed, criteria
 from screener.model.arrays import Bools, Codes, Floats, Ints
 from screener.model.finding import Findings, Outcome, Verdict
 from screener.model.run import Run
@@ -102,7 +102,7 @@ def _governing(
     value, applies = observed.value, observed.applies
     shape = np.broadcast_shapes(fail.shape, caution.shape, value.shape, applies.shape, (count, 1, 1))
     unknown = applies & np.isnan(value)
-    missing = _highest(unknown, shape)
+    missing = _highest(unknown)
     judged = applies & ~unknown if missing.any() else applies
     fail, caution = _where(judged, fail), _where(judged, caution)
     already = np.zeros((1, 1, 1), bool)
@@ -111,23 +111,23 @@ def _governing(
         already = ((before > 0) & (sides <= before + _SLACK) & (sides > 0)).any(axis=0) & (fail > 0)
         caution = np.where(already, np.maximum(caution, fail), caution)
         fail = np.where(already, -np.inf, fail)
-    most_fail, most_caution = _highest(fail, shape), _highest(caution, shape)
+    most_fail, most_caution = _highest(fail), _highest(caution)
     failed, warned = most_fail > _SLACK, most_caution > _SLACK
     by_fail = failed | ~np.isfinite(most_caution)
     open_ = missing & ~failed
-    least_fail = np.where(by_fail & ~open_, most_fail - _SLACK, np.inf)
-    least_caution = np.where(by_fail | open_, np.inf, most_caution - _SLACK)
-    governs = (fail >= once(least_fail)) | (caution >= once(least_caution))
+    least_fail = np.where(by_fail & ~open_, most_fail - _SLACK, np.inf)[..., None, None]
+    least_caution = np.where(by_fail | open_, np.inf, most_caution - _SLACK)[..., None, None]
+    governs = (fail >= least_fail) | (caution >= least_caution)
     if open_.any():
-        governs = governs | unknown & once(open_)
+        governs = governs | unknown & open_[..., None, None]
     place = np.broadcast_to(governs, shape).reshape(count, shape[1] * shape[2]).argmax(axis=1)
     state, pump = np.divmod(place, shape[2])
-    rows, by_state = np.arange(count), shape[1] > 1 or len(states) < all_states
+    at, by_state = (np.arange(count), state, pump), shape[1] > 1 or len(states) < all_states
 
     def there(values: Any) -> Any:
-        if not np.ndim(values):
-            return np.full(count, values)
-        return np.broadcast_to(values, shape)[rows, state, pump]
+        if np.ndim(values):
+            values = values[tuple(i if size != 1 else 0 for i, size in zip(at, values.shape, strict=True))]
+        return values if np.ndim(values) else np.full(count, values)
 
     seen = np.where(there(applies), there(value), np.nan)
     limit = np.where(
@@ -135,14 +135,12 @@ def _governing(
         _bound(there(observed.fail_below), there(observed.fail_above), seen),
         _bound(there(observed.caution_below), there(observed.caution_above), seen),
     )
-    outcome = np.where(
-        failed,
-        Outcome.FAIL,
-        np.where(missing, Outcome.NOT_ASSESSED, np.where(warned, Outcome.CAUTION, Outcome.PASS)),
-    )
-    blank = (outcome == Outcome.NOT_ASSESSED) & by_state & np.isnan(header[rows, states[state]])
+    outcome = np.full(count, Outcome.PASS.value, np.int8)
+    for found, worse in ((warned, Outcome.CAUTION), (missing, Outcome.NOT_ASSESSED), (failed, Outcome.FAIL)):
+        np.copyto(outcome, worse.value, where=found)
+    blank = (outcome == Outcome.NOT_ASSESSED) & by_state & np.isnan(header[at[0], states[state]])
     return (
-        outcome.astype(np.int8),
+        outcome,
         seen,
         limit,
         there(fail),
@@ -180,9 +178,9 @@ def _where(judged: Bools, shortfall: Floats) -> Floats:
     return np.where(judged, shortfall, -np.inf) if shortfall.ndim else shortfall
 
 
-def _highest(values: Any, shape: tuple[int, ...]) -> Any:
-    """Highest over states and pumps, (c,)."""
-    return np.broadcast_to(values.max(axis=(1, 2)) if values.ndim else values, shape[:1])
+def _highest(values: Any) -> Any:
+    """Highest over states and pumps, (c,) or one for all."""
+    return values.max(axis=(1, 2)) if values.ndim else values
 
 
 def _shortfall(observed: Observed, low: Floats | float, high: Floats | float) -> Floats:

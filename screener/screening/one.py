@@ -25,6 +25,7 @@ class Explained:
 
     judged  : one candidate and its run
     passing : (d,) [m] trim steps that are accepted, out of `steps` (t,) [m]
+    open    : number of steps that are conditional
     as_set  : trips with the users' valves left as they were, for information
     """
 
@@ -34,6 +35,7 @@ class Explained:
     model: int
     judged: Judged
     passing: Floats
+    open: int
     steps: Floats
     as_set: tuple[AsSet, ...]
 
@@ -75,6 +77,7 @@ def explain(case: Case, catalog: PumpTable, model: int, diameter: float | None =
         model=model,
         judged=one,
         passing=steps[every.candidates.verdict == Verdict.ACCEPTED],
+        open=int((every.candidates.verdict == Verdict.CONDITIONAL).sum()),
         steps=steps,
         as_set=valves_as_set(bench.header, one),
     )

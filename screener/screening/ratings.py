@@ -18,21 +18,25 @@ def thermal_power(pumps: Pumps) -> Floats:
 
     Taking it there and not at the minimum flow itself is on the safe side: common practice, no source.
     """
-    flow = _station_flows(pumps)
-    below_best = flow <= np.fmin(pumps.bep_flow, pumps.curves.end)[:, None]
-    power = station_power(pumps)
-    return np.fmax(_largest(np.where(below_best, power, np.nan)), _read(pumps, power, pumps.bep_flow))
+    power, flow = station_power(pumps), _station_flows(pumps)
+    last = np.fmin(pumps.bep_flow, pumps.curves.end)
+    largest = _read(pumps, power, pumps.bep_flow)
+    for rows in interpolate.blocks(len(pumps)):
+        below_best = np.where(flow[rows] <= last[rows, None], power[rows], np.nan)
+        largest[rows] = np.fmax(largest[rows], _largest(below_best))
+    return largest
 
 
 def station_power(pumps: Pumps) -> Floats:
     """Shaft power at 1000 kg/m3 at the stations, (c, k) [W]: as measured, else from the efficiency."""
     curves = pumps.curves
-    power = curves.power.copy()
-    rows = np.flatnonzero(np.isnan(power).any(axis=1))
-    flow, head, efficiency = _station_flows(pumps)[rows], curves.head[rows], curves.efficiency[rows]
-    useful = REFERENCE_DENSITY * GRAVITY * flow * head
-    missing = np.isnan(power[rows]) & (efficiency > 0) & (flow > 0)
-    power[rows] = np.divide(useful, efficiency, out=power[rows], where=missing)
+    power, flow = curves.power.copy(), _station_flows(pumps)
+    for rows in interpolate.blocks(len(pumps)):
+        efficiency = curves.efficiency[rows]
+        missing = np.isnan(power[rows]) & (efficiency > 0) & (flow[rows] > 0)
+        if missing.any():
+            useful = REFERENCE_DENSITY * GRAVITY * flow[rows] * curves.head[rows]
+            np.divide(useful, efficiency, out=power[rows], where=missing)
     return power
 
 
@@ -93,10 +97,15 @@ def efficiency_at(pumps: Pumps, flow: float) -> Floats:
     return _read(pumps, _efficiencies(pumps), np.full(len(pumps), flow))
 
 
-def smallest_flow(pumps: Pumps, *, heat_capacity: Real, temperature_rise: Real) -> Floats:
-    """Smallest allowed flow of each pump, stable or thermal, (c,) [m3/s]; 0 where neither is known."""
+def smallest_flow(
+    pumps: Pumps, *, heat_capacity: Real, temperature_rise: Real, power: Floats | None = None
+) -> Floats:
+    """Smallest allowed flow of each pump, stable or thermal, (c,) [m3/s]; 0 where neither is known.
+
+    power : (c,) [W] `thermal_power` of the pumps, where it is at hand
+    """
     thermal = thermal_minimum_flow(
-        power=thermal_power(pumps),
+        power=thermal_power(pumps) if power is None else power,
         density=REFERENCE_DENSITY,
         heat_capacity=heat_capacity,
         temperature_rise=temperature_rise,

@@ -34,7 +34,8 @@ def states(case: Case) -> tuple[State, ...]:
             ]
             for level in _upset_levels(case, duty) if new else ():
                 for state in _upsets(case, number, level, running, count, alike):
-                    same = (state.kind, level, duty.liquid, state.running, state.new, state.lost)
+                    rest = tuple(sorted(int(alike[row]) for row in state.running))
+                    same = (state.kind, level, duty.liquid, rest, state.new)
                     upsets.setdefault(same, state)
     return tuple(sorted([*duties, *upsets.values()], key=lambda state: (state.duty, state.kind)))
 

@@ -8,7 +8,7 @@ from typing import Any
 
 import numpy as np
 
-from screener import units
+from screener import ranking, units
 from screener.criteria import criteria
 from screener.model.finding import Candidates, Outcome, Verdict
 from screener.model.run import Kind, Run
@@ -101,7 +101,7 @@ def candidate(result: Shortlist, display: Display, row: int) -> dict[str, Any]:
 def figures(bench: Bench, display: Display, candidates: Candidates, row: int) -> dict[str, Any]:
     """What one candidate costs and gives."""
     f = candidates.figures
-    trips = [state for state in bench.header.states if state.kind == Kind.TRIP]
+    trips = ranking.trips(bench.header.conditions)
     volume, energy = float(f.volume[row]), float(f.energy[row])
     return {
         "score": tidy(float(f.score[row])),
@@ -115,8 +115,11 @@ def figures(bench: Bench, display: Display, candidates: Candidates, row: int) ->
         "npsh_ratio": tidy(float(candidates.npsh[row])),
         "motor": display.number("power", candidates.motor[row]),
         "firm_flow": [
-            {"state": names.where(bench.header.case, state), "delivered": _percent(f.firm[row, place])}
-            for place, state in enumerate(trips)
+            {
+                "state": names.after_trip(bench.header.case, bench.header.states[state], new=lost),
+                "delivered": _percent(f.firm[row, place]),
+            }
+            for place, (state, lost) in enumerate(trips)
         ],
     }
 

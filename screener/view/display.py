@@ -11,8 +11,8 @@ from screener import units
 from screener.view.blocks import Cell, Tone
 
 DASH = "-"
-DECIMALS = {"flow": 0, "head": 2, "npsh": 2, "power": 0, "length": 0, "pressure": 2}
-FINE = {"m3/s", "ML/d", "ft3/s", "MPa", "m", "in", "MW", "cm"}
+DECIMALS = {"flow": 0, "head": 2, "npsh": 2, "power": 0, "pressure": 2}
+FINE = {"m3/s", "ML/d", "ft3/s", "MPa", "MW"}
 
 
 class Display:
@@ -39,8 +39,11 @@ class Display:
         value = float(value)
         if not math.isfinite(value):
             return DASH
+        number = units.from_si(value, self._units[quantity])
+        if quantity == "length":
+            return f"{number:.1f}".removesuffix(".0") if self._units[quantity] == "mm" else f"{number:.4g}"
         places = self._places(quantity) if decimals is None else decimals
-        return f"{units.from_si(value, self._units[quantity]):z.{places}f}"
+        return f"{number:z.{places}f}"
 
     def full(self, quantity: str, value: float) -> str:
         """The value as text with its unit."""
@@ -60,11 +63,7 @@ class Display:
         unit = self._units[quantity]
         if quantity in ("head", "npsh"):
             return 1 if unit == "ft" else 2
-        return (
-            {"flow": 3, "pressure": 3, "length": 3, "power": 3}[quantity]
-            if unit in FINE
-            else DECIMALS[quantity]
-        )
+        return {"flow": 3, "pressure": 3, "power": 3}[quantity] if unit in FINE else DECIMALS[quantity]
 
 
 def tidy(value: float) -> float | None:

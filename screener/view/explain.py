@@ -103,7 +103,9 @@ def _reached(result: Explained, display: Display) -> list[str]:
         lines.append(f"From {display.full('length', wanted)} on it meets every duty.")
     if len(result.steps) > 1:
         least, most = display.text("length", result.steps[0]), display.full("length", result.steps[-1])
-        lines.append(f"Offered from {least} to {most}; {passing(result.passing, result.steps, display)}.")
+        lines.append(
+            f"Offered from {least} to {most}; {passing(result.passing, result.steps, result.open, display)}."
+        )
     return lines
 
 
@@ -120,10 +122,12 @@ def _out_of_reach(result: Explained, display: Display) -> str:
     return f"{text} {need}; at its largest impeller {gives}."
 
 
-def passing(accepted: Floats, steps: Floats, display: Display) -> str:
+def passing(accepted: Floats, steps: Floats, conditional: int, display: Display) -> str:
     """The diameters that pass, as ranges: "395 to 400 mm pass"."""
     if not accepted.size:
-        return "no diameter passes"
+        return (
+            f"no diameter is accepted, {conditional} are conditional" if conditional else "no diameter passes"
+        )
     inside = np.isin(steps, accepted)
     edges = np.flatnonzero(np.diff(np.concatenate([[0], inside.astype(np.int64), [0]])))
     ranges = []
@@ -139,8 +143,8 @@ def _states(bench: Bench, display: Display, run: Run) -> Table:
     columns = [
         Column("state", "state", left=True),
         Column("level", "level", left=True, rank=0 if len(case.levels) > 1 else 9),
-        Column("header_head", "header"),
-        Column("total_flow", "total", rank=3),
+        Column("header_head", "header", display.unit("head")),
+        Column("total_flow", "total", display.unit("flow"), rank=3),
         *(
             Column(
                 f"flow {names.pump(case, c)}",
@@ -192,8 +196,8 @@ def _as_set(result: Explained, display: Display) -> list[Block]:
     columns = [
         Column("state", "state", left=True),
         Column("level", "level", left=True, rank=0 if len(case.levels) > 1 else 9),
-        Column("header_head", "header"),
-        Column("total_flow", "total"),
+        Column("header_head", "header", display.unit("head")),
+        Column("total_flow", "total", display.unit("flow")),
         *(Column(f"flow {names.pump(case, p)}", names.pump(case, p), rank=0 if p < 3 else 6) for p in pumps),
     ]
     rows = []
@@ -274,11 +278,10 @@ def _figures(result: Explained, display: Display) -> list[str]:
     f = data.figures(result.bench, display, result.judged.candidates, 0)
     text = []
     if f["efficiency"] is not None:
-        text.append(f"System efficiency {f['efficiency']:.1f} %")
+        text.append(f"Useful head over shaft energy of all pumps {f['efficiency']:.1f} %")
     if f["energy_mwh_per_year"] is not None:
-        text.append(
-            f"{f['energy_mwh_per_year']:.0f} MWh and {f['energy_kwh_per_m3']:.4f} kWh/m3 over the year"
-        )
+        text.append(f"{f['energy_mwh_per_year']:.0f} MWh of shaft energy a year")
+        text.append(f"{f['energy_kwh_per_m3']:.4f} kWh/m3")
     if f["motor"] is not None:
         text.append(f"motor {f['motor']:g} {display.unit('power')}")
     trips = [

@@ -66,7 +66,7 @@ def found(bench: Bench, display: Display, findings: Findings, row: int) -> list[
                 value=past_end(display, end)
                 if np.isposinf(observed) and criterion.name == "curve-end"
                 else amount(criterion, display, observed),
-                limit=amount(criterion, display, float(findings.limit[row, column])),
+                limit=_limit(criterion, display, findings, row, column),
                 shortfall=float(findings.shortfall[row, column]),
                 pump=names.pump(case, pump) if pump >= 0 else "",
                 where=names.where(case, states[state]) if state >= 0 else "",
@@ -75,6 +75,17 @@ def found(bench: Bench, display: Display, findings: Findings, row: int) -> list[
             )
         )
     return result
+
+
+def _limit(criterion: Criterion, display: Display, findings: Findings, row: int, column: int) -> Cell:
+    """The limit, and whether it is the least or the most: seen from the side on which the value should lie."""
+    observed, limit = float(findings.observed[row, column]), float(findings.limit[row, column])
+    cell = amount(criterion, display, limit)
+    if cell.value is None or np.isnan(observed):
+        return cell
+    outside = findings.outcome[row, column] in (Outcome.FAIL, Outcome.CAUTION)
+    least = observed < limit if outside else observed >= limit
+    return Cell(f"{'min' if least else 'max'} {cell.text}", cell.value)
 
 
 def worst_first(items: list[Found]) -> list[Found]:
@@ -89,11 +100,12 @@ def amount(criterion: Criterion, display: Display, value: float) -> Cell:
     if not np.isfinite(value):
         return Cell("none" if np.isposinf(value) else DASH)
     if criterion.unit == "%":
-        return Cell(f"{100 * value:z.1f}", tidy(100 * value))
+        near = 0 < abs(value - 1) < 0.002  # 99.87 is no 99.9
+        return Cell(f"{100 * value:z.{2 if near else 1}f}", tidy(100 * value))
     if criterion.unit == "-":
         return Cell(f"{value:z.2f}" if abs(value) < 20 else f"{value:.0f}", tidy(value))
     quantity = next(d for d in units.SI if criterion.unit in units.unit_names(d))
-    return display.cell(quantity, value)
+    return display.nameplate(value) if quantity == "power" else display.cell(quantity, value)
 
 
 def past_end(display: Display, end: float) -> Cell:
@@ -118,7 +130,7 @@ def sentence(item: Found, display: Display, pump: str) -> str:
     text = item.criterion.sentence.format(
         pump=name,
         where=item.where or "in every state",
-        limit=f"{item.limit.text}{space}{unit}",
+        limit=f"{item.limit.text.removeprefix('min ').removeprefix('max ')}{space}{unit}",
         **{"is": item.value.text if item.value.value is None else f"{item.value.text}{space}{unit}"},
     )
     return f"{text}, as it is today" if item.already else text

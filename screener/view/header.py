@@ -114,8 +114,9 @@ def _today(bench: Bench, display: Display) -> Table:
 def _name(bench: Bench, state: State) -> str:
     if state.kind == Kind.DUTY:
         return names.situation(bench.header.case, state)
+    several = any(len(duty.running) > 1 for duty in bench.header.case.duties)
     if state.kind == Kind.WIDE_OPEN:
-        return "wide open"
+        return f"open: {names.combination(bench.header.case, state.running)}" if several else "wide open"
     return f"{names.lost(bench.header.case, state)} lost"
 
 

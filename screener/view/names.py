@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 from screener.model.case import Case
 from screener.model.run import Kind, State
@@ -41,6 +42,14 @@ def situation(case: Case, state: State) -> str:
     if state.kind == Kind.TRIP:
         return f"{duty}, {lost(case, state)} lost"
     return duty
+
+
+def after_trip(case: Case, state: State, *, new: bool) -> str:
+    """A trip in a few words; `new` where it is the new pump that is lost out of a state run wide open."""
+    if not new:
+        return where(case, state)
+    name = f"{situation(case, replace(state, kind=Kind.DUTY))}, {NEW} lost"
+    return f"{name}, {level(case, state)}" if len(case.levels) > 1 else name
 
 
 def lost(case: Case, state: State) -> str:

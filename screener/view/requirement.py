@@ -78,7 +78,7 @@ def _in_words(report: HeaderReport, display: Display, rated: int) -> list[tuple[
     if np.isfinite(simple.rated_flow):
         reason = "the duty less the rated flows of the installed pumps"
         pairs.append((f"not {_duty(display, simple.rated_flow, simple.rated_head)}", reason))
-    if np.isfinite(report.highest_header):
+    if report.highest_header > np.nan_to_num(need.head):
         heads = report.bench.today.header[0]
         highest = max(report.needs, key=lambda place: float(np.nan_to_num(heads[place])))
         reason = f"or its check valve stays shut: {names.where(header.case, header.states[highest])}"

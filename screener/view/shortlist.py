@@ -14,7 +14,7 @@ from screener.view import data, names, requirement, why_not
 from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
 from screener.view.data import Origin
 from screener.view.display import Display, plain, word
-from screener.view.findings import found
+from screener.view.findings import found, sentence, worst_first
 from screener.view.why_not import ranked_cells
 
 TOP = 10
@@ -122,12 +122,26 @@ def _ranked(result: Shortlist, display: Display, rows: Any, *, references: bool 
             label = f"one more {case.installed[installed].tag}" + (" (fails)" if failed else "")
             cells = [word("="), word(label), *ranked_cells(result.references, display, row)]
             table.append([Cell(cell.text, cell.value, tone) for cell in cells])
+    fails = _references_fail(result, display) if references else []
     note = [
+        *fails,
         "eff: useful head of the system over shaft energy, all pumps. share: load-share difference, points. "
         "% BEP: lowest flow over best efficiency, any pump in any duty. NPSH: lowest NPSHa/NPSHr, trips "
-        "included."
+        "included.",
     ]
     return Table(columns, table, note)
+
+
+def _references_fail(result: Shortlist, display: Display) -> list[str]:
+    """Why one more of an installed pump would not pass."""
+    lines = []
+    for row, installed in enumerate(result.same_as):
+        reasons = worst_first(found(result.bench, display, result.references.findings, row))
+        if reasons:
+            tag = result.bench.header.case.installed[installed].tag
+            text = "; ".join(sentence(reason, display, "it") for reason in reasons[:3])
+            lines.append(f"One more {tag} would fail: {text}.")
+    return lines
 
 
 def _notes(result: Shortlist, display: Display) -> list[str]:

@@ -14,7 +14,7 @@ from screener.screening.one import Trims
 from screener.view import data, names
 from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
 from screener.view.data import Origin
-from screener.view.display import Display, percent, plain
+from screener.view.display import Display, percent, plain, word
 from screener.view.explain import VERDICT_TONES, passing
 from screener.view.findings import found, sentence, worst_first
 
@@ -60,7 +60,8 @@ def _sentence(result: Trims, display: Display, accepted: Floats) -> str:
     """What passes, and what stops the pump just below and just above."""
     candidates = result.judged.candidates
     diameters = candidates.diameter
-    text = f"{passing(accepted, diameters, display)}."
+    conditional = int((candidates.verdict == Verdict.CONDITIONAL).sum())
+    text = f"{passing(accepted, diameters, conditional, display)}."
     text = text[0].upper() + text[1:]
     if not accepted.size:
         nearest = display.full("length", diameters[result.best])
@@ -89,14 +90,13 @@ def _everyone(result: Trims) -> str:
     return names.combination(header.case, state.running, state.new)
 
 
-def _measures(result: Trims, display: Display) -> list[tuple[str, str, Callable[[int], Cell]]]:
-    """What is compared: key, label with unit, and the cell of a row."""
+def _measures(result: Trims, display: Display) -> list[tuple[Column, Callable[[int], Cell]]]:
+    """What is compared: its column, and its cell for a row."""
     header, run, candidates = result.bench.header, result.judged.run, result.judged.candidates
     case, f, low = header.case, candidates.figures, header.lowest
-    flow = display.unit("flow")
+    flow, power = display.unit("flow"), display.unit("power")
     lowest = names.situation(case, header.states[low])
     rated = names.situation(case, header.states[header.rated])
-    state = header.states[low]
 
     def flows(place: int, column: int) -> Callable[[int], Cell]:
         def cell(row: int) -> Cell:
@@ -105,36 +105,35 @@ def _measures(result: Trims, display: Display) -> list[tuple[str, str, Callable[
 
         return cell
 
-    items = [
-        ("flow_rated", f"new at {rated}, {flow}", flows(header.rated, 0)),
-        ("flow_lowest", f"new at {lowest}, {flow}", flows(low, 0)),
-        *(
-            (
-                f"flow_lowest {case.installed[row].tag}",
-                f"{case.installed[row].tag} at {lowest}, {flow}",
-                flows(low, 1 + row),
-            )
-            for row in dict.fromkeys(int(header.alike[row]) for row in state.running)
-        ),
-        ("lowest", f"lowest header flow, {flow}", lambda row: display.cell("flow", result.band.lowest[row])),
+    def limit(values: Floats) -> Callable[[int], Cell]:
+        return lambda row: display.cell("flow", values[row])
+
+    kinds = dict.fromkeys(int(header.alike[row]) for row in header.states[low].running)
+    installed = [
         (
-            "highest",
-            f"highest header flow, {flow}",
-            lambda row: display.cell("flow", result.band.highest[row]),
-        ),
-        ("shutoff_match", "shutoff head match, %", lambda row: percent(float(f.shutoff[row]), 1, sign=True)),
-        ("load_share", "load share, points", lambda row: percent(float(f.share[row]), 1)),
-        ("npsh_ratio", "NPSHa/NPSHr, lowest", lambda row: plain(float(candidates.npsh[row]), 2)),
-        (
-            "motor",
-            f"motor, {display.unit('power')}",
-            lambda row: display.nameplate(candidates.motor[row]),
-        ),
-        ("efficiency", "system efficiency, %", lambda row: percent(float(f.efficiency[row]), 1)),
-        ("score", "score", lambda row: plain(float(f.score[row]), 1)),
-        ("worst", "stopped by", lambda row: Cell(worst_criterion(candidates.findings, row))),
+            Column(f"flow_lowest {case.installed[row].tag}", f"{case.installed[row].tag} at {lowest}", flow),
+            row,
+        )
+        for row in kinds
     ]
-    return items
+    stopped = [worst_criterion(candidates.findings, row) for row in range(len(candidates))]
+    return [
+        (Column("flow_rated", f"new at {rated}", flow), flows(header.rated, 0)),
+        (Column("flow_lowest", f"new at {lowest}", flow), flows(low, 0)),
+        *((column, flows(low, 1 + row)) for column, row in installed),
+        (Column("lowest", "lowest header flow", flow), limit(result.band.lowest)),
+        (Column("highest", "highest header flow", flow), limit(result.band.highest)),
+        (
+            Column("shutoff_match", "shutoff head match", "%"),
+            lambda row: percent(float(f.shutoff[row]), 1, sign=True),
+        ),
+        (Column("load_share", "load share, points"), lambda row: percent(float(f.share[row]), 1)),
+        (Column("npsh_ratio", "NPSHa/NPSHr, lowest"), lambda row: plain(float(candidates.npsh[row]), 2)),
+        (Column("motor", "motor", power), lambda row: display.nameplate(candidates.motor[row])),
+        (Column("efficiency", "system efficiency", "%"), lambda row: percent(float(f.efficiency[row]), 1)),
+        (Column("score", "score"), lambda row: plain(float(f.score[row]), 1)),
+        (Column("worst", "stopped by", left=True), lambda row: word(stopped[row])),
+    ]
 
 
 def _side_by_side(result: Trims, display: Display, shown: Any) -> Table:
@@ -149,8 +148,9 @@ def _side_by_side(result: Trims, display: Display, shown: Any) -> Table:
         text = display.text("length", candidates.diameter[row])
         columns.append(Column(text, f">{text}<" if row == result.best else text, rank=min(far[int(row)], 8)))
     rows = []
-    for key, label, cell in _measures(result, display):
-        if key != "worst":
+    for column, cell in _measures(result, display):
+        if column.key != "worst":
+            label = f"{column.title}, {column.unit}" if column.unit else column.title
             rows.append([Cell(label), *(cell(int(row)) for row in shown)])
     rows.append([Cell("verdict"), *(_verdict(result, int(row)) for row in shown)])
     return Table(columns, rows)
@@ -165,15 +165,15 @@ def _verdict(result: Trims, row: int) -> Cell:
 def _flat(result: Trims, display: Display) -> Table:
     measures = _measures(result, display)
     columns = [
-        Column("diameter", f"diameter, {display.unit('length')}"),
-        *(Column(key, label) for key, label, _ in measures),
+        Column("diameter", "diameter", display.unit("length")),
+        *(column for column, _ in measures),
         Column("verdict", "verdict", left=True),
     ]
     candidates = result.judged.candidates
     rows = [
         [
             display.cell("length", candidates.diameter[row]),
-            *(cell(row) for _, _, cell in measures),
+            *(cell(row) for _, cell in measures),
             Cell(
                 data.VERDICTS[Verdict(int(candidates.verdict[row]))],
                 data.VERDICTS[Verdict(int(candidates.verdict[row]))],
@@ -193,12 +193,7 @@ def _data(result: Trims, display: Display, origin: Origin, accepted: Floats) -> 
         "best_diameter": display.number("length", candidates.diameter[result.best]),
         "passing_diameters": [display.number("length", value) for value in accepted],
         "trims": [
-            {
-                column.key: cell.value
-                if cell.value is not None
-                else (cell.text if column.key == "worst" and cell.text else None)
-                for column, cell in zip(flat.columns, row, strict=True)
-            }
+            {column.key: cell.value for column, cell in zip(flat.columns, row, strict=True)}
             for row in flat.rows
         ],
         "limits": data.limits(result.bench, display),

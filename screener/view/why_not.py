@@ -16,6 +16,9 @@ from screener.view.blocks import Block, Cell, Column, Heading, Lines, Table, Ton
 from screener.view.display import Display, percent, plain, word
 from screener.view.findings import Found, found, sentence, unit_of, worst_first
 
+FEW = 20
+"""Models in a catalog up to which those that cannot reach the duties are listed one by one."""
+
 SHOWN = 4
 """Reasons shown of each rejected pump, unless everything is asked for."""
 
@@ -27,7 +30,7 @@ def most_efficient(result: Shortlist, display: Display, groups: dict[Verdict, An
     if not rejected.size:
         return []
     row = int(rejected[efficiency[rejected].argmax()])
-    others = efficiency[result.best.verdict != Verdict.REJECTED]
+    others = efficiency[groups[Verdict.ACCEPTED]]
     if efficiency[row] <= others.max(initial=0.0):
         return []
     name = result.table.ids[int(result.best.model[row])]
@@ -35,7 +38,11 @@ def most_efficient(result: Shortlist, display: Display, groups: dict[Verdict, An
     first = [reason for reason in reasons if reason.criterion.name == "start" and reason.pump == names.NEW]
     rest = [reason for reason in reasons if reason not in first]
     need = result.needs[result.bench.header.rated]
-    against = f", against {100 * others.max():.1f} % of the best that passes" if others.size else ""
+    against = ""
+    if others.size:
+        best = int(groups[Verdict.ACCEPTED][others.argmax()])
+        accepted = result.table.ids[int(result.best.model[best])]
+        against = f", against {100 * others.max():.1f} % of {accepted}, the best that is accepted"
     lines = [
         f"{name} at {display.full('length', result.best.diameter[row])} has {100 * efficiency[row]:.1f} % "
         f"at {display.full('flow', need.flow)}{against}."
@@ -95,6 +102,7 @@ def rejected(result: Shortlist, display: Display, rows: Any, everything: bool) -
         Column("why", "why not", left=True),
         Column("observed", "is"),
         Column("limit", "limit"),
+        Column("criterion", "criterion", left=True, rank=2),
         Column("of", "of", left=True),
         Column("where", "where", left=True),
     ]
@@ -111,13 +119,14 @@ def rejected(result: Shortlist, display: Display, rows: Any, everything: bool) -
                     word(_what(item, display)),
                     Cell(item.value.text, item.value.value, Tone.BAD),
                     item.limit,
+                    word(item.criterion.name),
                     word(item.pump),
                     word(item.where),
                 ]
             )
         if len(reasons) > len(kept):
             more = f"and {len(reasons) - len(kept)} more"
-            table.append([word(""), word(""), word(more, Tone.QUIET), *[word("")] * 4])
+            table.append([word(""), word(""), word(more, Tone.QUIET), *[word("")] * 5])
     return Table(columns, table)
 
 
@@ -134,7 +143,8 @@ def out_of_reach(result: Shortlist, display: Display, everything: bool) -> list[
         return []
     line = "Cannot reach the duties: " + ", ".join(f"{count} {name}" for name, count in counts if count) + "."
     blocks: list[Block] = [Lines([line])]
-    if everything:
+    few = len(result.table) <= FEW
+    if everything or few:
         blocks.append(_unreached(result, display))
     return blocks
 

@@ -35,6 +35,8 @@ CONDITIONS = {
     "duty": 0,
     "kind": KINDS,
     "rated": (True, False, False, False),
+    "lowest": (False, True, False, False),
+    "open": (False, False, True, True),
     "asked": 0.3,
     "wanted_head": 37.5,
     "density": 1000.0,
@@ -79,7 +81,15 @@ PUMPS = BOTH | {
     "casing_volume": 0.1,
 }
 TABLES = {"run": RUN, "conditions": CONDITIONS, "ratings": RATINGS, "pumps": PUMPS}
-_TYPES = {"duty": np.int64, "model": np.int64, "kind": np.int8, "rated": np.bool_, "runs": np.bool_}
+_TYPES = {
+    "duty": np.int64,
+    "model": np.int64,
+    "kind": np.int8,
+    "rated": np.bool_,
+    "lowest": np.bool_,
+    "open": np.bool_,
+    "runs": np.bool_,
+}
 
 
 def _run(*, candidates: int = 1, states: int = 4, installed: int = 2, **changes: dict[str, Any]) -> Run:

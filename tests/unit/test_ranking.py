@@ -15,6 +15,8 @@ WEIGHTS = {"efficiency": 1.0, "shutoff_match": 0.1, "load_share": 0.1}
 CONDITIONS = {
     "kind": [Kind.DUTY, Kind.DUTY, Kind.DUTY, Kind.TRIP, Kind.TRIP],
     "rated": [True, False, False, False, False],
+    "lowest": [False, True, False, False, False],
+    "open": [False, False, False, True, True],
     "asked": [0.3, 0.2, 0.2, 0.3, 0.2],
     "share_of_hours": [1.0, 0.5, 0.5, 0.0, 0.0],
     "hours": [1000.0, 3000.0, 3000.0, 1000.0, 3000.0],
@@ -41,7 +43,7 @@ def tiny(make_run):
         made = make_run(
             states=5, installed=1, run=RUN | (run or {}), conditions=CONDITIONS | (conditions or {})
         )
-        return figures(made, count=2, weights=WEIGHTS | weights)
+        return figures(made, made, count=2, weights=WEIGHTS | weights)
 
     return make
 
@@ -84,7 +86,7 @@ def test_the_worst_match_keeps_its_sign(make_run) -> None:
     matches = [[0.03, -0.08, NAN], [0.09, -0.08, 0.01], [NAN, NAN, NAN]]
     shares = [[NAN, 0.05, 0.12], [0.3, 0.1, 0.2], [NAN, NAN, NAN]]
     run = make_run(candidates=3, installed=3, run={"shutoff_match": matches, "load_share": shares})
-    found = figures(run, count=1, weights=WEIGHTS)
+    found = figures(run, run, count=1, weights=WEIGHTS)
     np.testing.assert_array_equal(found.shutoff, [-0.08, 0.09, NAN])
     np.testing.assert_array_equal(found.share, [0.12, 0.3, NAN])
     assert np.isnan(found.score).tolist() == [False, False, True]
