@@ -132,7 +132,8 @@ def _own(q: Quantities, node: Node, path: KeyPath) -> tuple[PumpTable, int, floa
     """Return the table of a curve written in the case, its row and diameter [m]; None after a problem."""
     before = len(q.problems)
     (curve,) = _OwnColumns(node, q, path).checked()
-    if len(q.problems) > before:
+    unread = np.isnan(curve.flow).any() or np.isnan(curve.head).any()  # a missing unit is told once only
+    if len(q.problems) > before or unread:
         return None
     entry = Entry(
         id="",

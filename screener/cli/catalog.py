@@ -29,4 +29,5 @@ def check(
 
     entries, files = read(paths)
     curves = sum(len(entry.curves) for entry in entries)
-    typer.echo(f"{len(files)} files, {len(entries)} pumps, {curves} curves: no problem found")
+    counts = ((len(files), "file"), (len(entries), "pump"), (curves, "curve"))
+    typer.echo(", ".join(f"{n} {what}{'' if n == 1 else 's'}" for n, what in counts) + ": no problem found")

@@ -125,30 +125,31 @@ def _governing(
     at, by_state = (np.arange(count), state, pump), shape[1] > 1 or len(states) < all_states
 
     def there(values: Any) -> Any:
-        if np.ndim(values):
-            values = values[tuple(i if size != 1 else 0 for i, size in zip(at, values.shape, strict=True))]
-        return values if np.ndim(values) else np.full(count, values)
+        if np.ndim(values) == 0:
+            return values
+        return values[tuple(i if size != 1 else 0 for i, size in zip(at, values.shape, strict=True))]
 
     seen = np.where(there(applies), there(value), np.nan)
-    limit = np.where(
-        by_fail,
-        _bound(there(observed.fail_below), there(observed.fail_above), seen),
-        _bound(there(observed.caution_below), there(observed.caution_above), seen),
+    limit = _bound(
+        np.where(by_fail, there(observed.fail_below), there(observed.caution_below)),
+        np.where(by_fail, there(observed.fail_above), there(observed.caution_above)),
+        seen,
     )
     outcome = np.full(count, Outcome.PASS.value, np.int8)
     for found, worse in ((warned, Outcome.CAUTION), (missing, Outcome.NOT_ASSESSED), (failed, Outcome.FAIL)):
         np.copyto(outcome, worse.value, where=found)
     blank = (outcome == Outcome.NOT_ASSESSED) & by_state & np.isnan(header[at[0], states[state]])
-    return (
+    columns = (
         outcome,
         seen,
         limit,
         there(fail),
-        states[state] if by_state else np.full(count, -1),
-        pump if shape[2] > 1 else np.full(count, 0 if not criterion.every_pump else -1),
+        states[state] if by_state else -1,
+        pump if shape[2] > 1 else -1 if criterion.every_pump else 0,
         there(already),
         blank,
     )
+    return [np.broadcast_to(column, count) for column in columns]
 
 
 def _speaking(observed: Observed, count: int, before: Floats | None) -> tuple[Ints, Observed, Floats | None]:

@@ -78,7 +78,7 @@ def found(bench: Bench, display: Display, findings: Findings, row: int) -> list[
 
 
 def _limit(criterion: Criterion, display: Display, findings: Findings, row: int, column: int) -> Cell:
-    """The limit, and whether it is the least or the most: seen from the side on which the value should lie."""
+    """The limit, and whether it is the least or the most, by the side on which the value lies."""
     observed, limit = float(findings.observed[row, column]), float(findings.limit[row, column])
     cell = amount(criterion, display, limit)
     if cell.value is None or np.isnan(observed):

@@ -44,7 +44,7 @@ def screen(report: HeaderReport, origin: Origin) -> Screen:
 
 def _liquid(bench: Bench) -> str:
     return ", ".join(
-        liquid.name if np.isnan(liquid.temperature) else f"{liquid.name}, {liquid.temperature:g} degC"
+        liquid.name if np.isnan(liquid.temperature) else f"{liquid.name}, {liquid.temperature:.4g} degC"
         for liquid in bench.header.case.liquids
     )
 

@@ -63,7 +63,7 @@ def _held_shut(result: Shortlist, display: Display, row: int) -> str:
     return (
         f"At {where} the others hold the header at {display.full('head', header)}; its shutoff head is "
         f"{display.full('head', header * (1 + margin))}. Its check valve stays shut: it gives nothing, and "
-        "cooks."
+        "heats up."
     )
 
 
