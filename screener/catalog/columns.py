@@ -123,7 +123,7 @@ class Columns:
             what = (
                 f"power {given} of point {k + 1} and its efficiency differ by {off[start + k]:.1%} of power"
             )
-            hint = f"at most {POWER_SLACK:.0%}; look at head, power and efficiency there, at the units and the density"
+            hint = f"at most {POWER_SLACK:.0%}; look at head, power and efficiency there, and at the units"
             self.quantities.bad(self._path(curve, "power", k), what, hint)
 
     def _check_best(self, flow: Floats, bep_flow: Floats) -> None:

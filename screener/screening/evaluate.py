@@ -150,7 +150,7 @@ def _read(curves: tuple[Curves, Curves], column: str, axis: str, flow: Floats) -
         values, reach = getattr(pumps, column)[part], getattr(pumps, axis)[part]
         at, read = flow[:, :, place].T, result[:, :, place].T
         known = np.flatnonzero(~np.isnan(values).all(axis=1))
-        if 0 < known.size < len(values):
+        if 0 < known.size < len(values) / 2:
             read[:, known] = _stations(values[known], reach[known], at[:, known])
         elif known.size:
             read[:] = _stations(values, reach, at)
