@@ -68,8 +68,10 @@ def shortlist(case: Case, catalog: PumpTable, *, progress: Progress | None = Non
     rows, diameters = _ladder(catalog, found, case.new_pump.trim_step)
     first = _assess(bench, catalog, found, rows, diameters, progress)
     rows, diameters = _between(first, case.new_pump.trim_step)
-    candidates = join([first, _assess(bench, catalog, found, rows, diameters, progress)])
-    best = take(candidates, _order(take(candidates, kept := _best(candidates)), kept))
+    second = _assess(bench, catalog, found, rows, diameters, progress)
+    finalists = join([take(first, _best(first)), take(second, _best(second))])
+    best = take(finalists, _best(finalists))
+    best = take(best, np.lexsort((best.model, _merit(best), best.verdict)))
     same_as = tuple(dict.fromkeys(int(row) for row in bench.header.alike))
     return Shortlist(
         bench=bench,
@@ -78,7 +80,7 @@ def shortlist(case: Case, catalog: PumpTable, *, progress: Progress | None = Non
         reach=found,
         best=best,
         duty_efficiency=_duty_efficiency(catalog, found, best, needs[bench.header.rated].flow),
-        screened=len(candidates),
+        screened=len(first) + len(second),
         references=judged(bench, take_pumps(case.pumps, np.array(same_as))).candidates,
         same_as=same_as,
         inherited=inherited(bench.today, bench.limits),
@@ -162,11 +164,6 @@ def _best(candidates: Candidates) -> Ints:
     first: Bools = np.ones(len(order), bool)
     first[1:] = candidates.model[order][1:] != candidates.model[order][:-1]
     return order[first]
-
-
-def _order(best: Candidates, rows: Ints) -> Ints:
-    """The rows of the best candidates, accepted first, then conditional, then rejected, nearest first."""
-    return rows[np.lexsort((best.model, _merit(best), best.verdict))]
 
 
 def _merit(candidates: Candidates) -> Floats:
