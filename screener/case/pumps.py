@@ -150,7 +150,11 @@ class _OwnColumns(Columns):
     """A curve written in the case: checked as those of a catalog are, with places in the case."""
 
     def __init__(self, node: Node, q: Quantities, path: KeyPath) -> None:
-        super().__init__([{"curves": [node]}], q)
+        measured = {
+            key: [None if item == "-" else item for item in value] if isinstance(value, list) else value
+            for key, value in node.items()
+        }
+        super().__init__([{"curves": [measured]}], q)
         self._at = path
 
     def _path(self, curve: int, *keys: str | int) -> KeyPath:

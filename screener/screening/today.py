@@ -100,9 +100,9 @@ def naive(bench: Bench, place: int) -> Naive:
     given = float(today.total[0, place])
     heads = branch.head_and_slope(header.branches, rows, np.nan_to_num(rated))[0]
     return Naive(
-        missing_flow=(state.asked - given) / state.new,
+        missing_flow=float(np.maximum(state.asked - given, 0.0)) / state.new,
         missing_head=float(today.header[0, place]),
-        rated_flow=float(state.asked - rated.sum()) / state.new,
+        rated_flow=float(np.maximum(state.asked - rated.sum(), 0.0)) / state.new,
         rated_head=float(np.where(np.isnan(rated), np.nan, heads).max()) if rows.size else np.nan,
     )
 

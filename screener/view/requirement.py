@@ -25,7 +25,7 @@ def blocks(report: HeaderReport, display: Display) -> list[Block]:
         Column("level", "level", left=True, rank=0 if len(case.levels) > 1 else 9),
         Column("flow", "new pump", display.unit("flow")),
         Column("head", "at head", display.unit("head")),
-        Column("header_head", "header", display.unit("head")),
+        Column("header_head", "system", display.unit("head")),
         Column("supplied", "others give", display.unit("flow"), rank=1),
         Column("missing_flow", "missing", display.unit("flow"), rank=2),
         Column("rated_flow_left", "by rated flows", display.unit("flow"), rank=3),
@@ -48,8 +48,8 @@ def blocks(report: HeaderReport, display: Display) -> list[Block]:
             ]
         )
     note = [
-        "new pump: what is left when the header stands at the head that the duty needs; 0 where the others "
-        "suffice.",
+        "new pump: what is left when the header stands at the head that the system takes for the duty; 0 "
+        "where the others suffice.",
         "missing: flow short today. by rated flows: the duty less the rated flows. Neither sees that the "
         "installed pumps move.",
     ]
