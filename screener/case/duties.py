@@ -79,7 +79,7 @@ def _running(q: Quantities, node: Node | Sequence[str], path: KeyPath, tags: Seq
     """Return the combinations of installed pumps, and for each whether the new pump runs."""
     if not isinstance(node, Mapping):
         return _listed(q, node, path, tags)
-    count, new = node["any"], node["new"]
+    count, new = int(node["any"]), node["new"]
     named = node.get("of", tags)
     _once(q, named, (*path, "of"))
     among = [lookup(q, tag, tags, (*path, "of", i), "pump") for i, tag in enumerate(named)]

@@ -108,7 +108,7 @@ def figures(bench: Bench, display: Display, candidates: Candidates, row: int) ->
         "efficiency": _percent(f.efficiency[row]),
         "power": display.number("power", f.power[row]),
         "energy_mwh_per_year": tidy(energy / 3.6e9),
-        "energy_kwh_per_m3": tidy(energy / 3.6e6 / volume),
+        "energy_kwh_per_m3": tidy(kwh_per_m3(energy, volume)),
         "shutoff_match": _percent(f.shutoff[row]),
         "load_share": _percent(f.share[row]),
         "lowest_flow_of_best": _percent(candidates.lowest_share[row]),
@@ -122,6 +122,11 @@ def figures(bench: Bench, display: Display, candidates: Candidates, row: int) ->
             for place, (state, lost) in enumerate(trips)
         ],
     }
+
+
+def kwh_per_m3(energy: float, volume: float) -> float:
+    """Energy [J] for each cubic metre, NaN where nothing is delivered."""
+    return energy / 3.6e6 / volume if volume > 0 else np.nan
 
 
 def finding(item: Found, display: Display) -> dict[str, Any]:

@@ -19,6 +19,7 @@ from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Ta
 from screener.view.data import Origin
 from screener.view.display import DASH, Display, percent, plain, word
 from screener.view.findings import NO_FIGURES, Found, found, unit_of
+from screener.view.flows import NOTE, flow_cell
 
 VERDICT_TONES = {
     Verdict.ACCEPTED: Tone.GOOD,
@@ -170,7 +171,7 @@ def _states(bench: Bench, display: Display, run: Run) -> Table:
                 word(names.level(case, state)),
                 display.cell("head", run.header[0, place]),
                 display.cell("flow", run.total[0, place]),
-                *(_flow(bench, display, run, place, column) for column in range(len(flow))),
+                *(_flow(display, run, place, column) for column in range(len(flow))),
                 percent(flow[0] / run.ratings.bep_flow[0, 0]) if np.isfinite(flow[0]) else Cell(DASH),
                 plain(margins[0], 2),
                 plain(float(np.fmin.reduce(margins)), 2),
@@ -180,8 +181,7 @@ def _states(bench: Bench, display: Display, run: Run) -> Table:
         )
     note = [
         "% BEP, NPSH (available over required), power and efficiency are the new pump's; lowest: NPSH of any "
-        "pump. shut: held shut by its check valve. past: beyond the last measured point; such a state has no "
-        "figures."
+        f"pump. {NOTE}"
     ]
     return Table(columns, rows, note)
 
@@ -215,15 +215,11 @@ def _as_set(result: Explained, display: Display) -> list[Block]:
     return [Heading("AFTER A TRIP, VALVES AS THEY WERE", "for information, no verdict"), Table(columns, rows)]
 
 
-def _flow(bench: Bench, display: Display, run: Run, place: int, column: int) -> Cell:
-    value = float(run.flow[0, place, column])
+def _flow(display: Display, run: Run, place: int, column: int) -> Cell:
+    """Flow of one pump, "off" where it does not run."""
     if not run.conditions.runs[place, column]:
         return Cell("off", None, Tone.QUIET)
-    if np.isposinf(value):
-        return Cell(f"past {display.text('flow', run.ratings.end[0, column])}", None, Tone.BAD)
-    if np.isneginf(value):
-        return Cell(f"below {display.text('flow', run.ratings.start[0, column])}", None, Tone.BAD)
-    return Cell("shut", 0.0, Tone.BAD) if value == 0 else display.cell("flow", value)
+    return flow_cell(display, run, place, column)
 
 
 def _criteria(bench: Bench, display: Display, items: list[Found]) -> Table:

@@ -15,6 +15,7 @@ from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Ta
 from screener.view.data import Origin, head
 from screener.view.display import DASH, Display, percent, plain, word
 from screener.view.findings import Found, found
+from screener.view.flows import flow_cell
 
 
 def screen(report: HeaderReport, origin: Origin) -> Screen:
@@ -29,6 +30,7 @@ def screen(report: HeaderReport, origin: Origin) -> Screen:
         Lines([f"{_installed(bench)}    {_units(display)}"]),
         Heading("TODAY, WITHOUT THE NEW PUMP"),
         table,
+        Lines(_nothing_flows(bench), Tone.WARNING),
         *requirement.blocks(report, display),
         Heading("PERMITTED HEADER FLOW TODAY"),
         _bands(report, display),
@@ -54,6 +56,19 @@ def _installed(bench: Bench) -> str:
     listed = tags[0] if len(tags) == 1 else f"{', '.join(tags[:-1])} and {tags[-1]}"
     count = bench.header.case.new_pump.count
     return f"{listed} installed, {'one place' if count == 1 else f'{count} places'} free."
+
+
+def _nothing_flows(bench: Bench) -> list[str]:
+    """Duties in which the static head lies above every shutoff head today."""
+    states = [s for s, total in zip(bench.header.states, bench.today.total[0], strict=True) if total == 0]
+    duties = dict.fromkeys(
+        bench.header.case.duties[s.duty].name for s in states if s.kind == Kind.DUTY and s.running
+    )
+    if not duties:
+        return []
+    return [
+        f"Nothing flows at {', '.join(duties)}: the static head lies above the shutoff head of every pump."
+    ]
 
 
 def _units(display: Display) -> str:
@@ -89,7 +104,6 @@ def _today(bench: Bench, display: Display) -> Table:
         if key in seen or not state.running:
             continue
         seen.add(key)
-        flow = run.flow[0, place, 1:]
         running = [1 + row for row in state.running]
         rows.append(
             [
@@ -98,7 +112,7 @@ def _today(bench: Bench, display: Display) -> Table:
                 display.cell("flow", state.asked if state.kind == Kind.DUTY else np.nan),
                 display.cell("flow", run.total[0, place]),
                 display.cell("head", run.header[0, place]),
-                *(_flow(bench, display, flow, state, row) for row in kinds),
+                *(_flow(bench, display, place, row) for row in kinds),
                 percent(_worst(run.flow[0, place] / run.ratings.bep_flow[0], running, farthest_from=1.0)),
                 plain(_worst(run.npsh_available[0, place] / run.npsh_required[0, place], running), 2),
                 percent(-_worst(-run.power[0, place] / run.ratings.motor[0], running)),
@@ -120,16 +134,14 @@ def _name(bench: Bench, state: State) -> str:
     return f"{names.lost(bench.header.case, state)} lost"
 
 
-def _flow(bench: Bench, display: Display, flow: Any, state: State, kind: int) -> Cell:
-    """Flow of one of the identical pumps that run, the marks in words."""
-    values = [flow[row] for row in state.running if bench.header.alike[row] == kind]
-    if not values:
+def _flow(bench: Bench, display: Display, place: int, kind: int) -> Cell:
+    """Flow of one of the identical pumps that run; what is marked shows first."""
+    running = [row for row in bench.header.states[place].running if bench.header.alike[row] == kind]
+    if not running:
         return Cell(DASH)
-    if any(np.isposinf(value) for value in values):
-        return Cell(f"past {display.text('flow', bench.header.branches.end[kind])}", None, Tone.BAD)
-    if any(np.isneginf(value) for value in values):
-        return Cell(f"below {display.text('flow', bench.header.branches.low[kind])}", None, Tone.BAD)
-    return Cell("shut", 0.0, Tone.BAD) if values[0] == 0 else display.cell("flow", values[0])
+    flow = bench.today.flow[0, place]
+    marked = [row for row in running if not np.isfinite(flow[1 + row]) and not np.isnan(flow[1 + row])]
+    return flow_cell(display, bench.today, place, 1 + (marked or running)[0])
 
 
 def _worst(values: Any, columns: list[int], farthest_from: float | None = None) -> float:

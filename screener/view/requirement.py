@@ -73,7 +73,8 @@ def _in_words(report: HeaderReport, display: Display, rated: int) -> list[tuple[
         reason = f"header at {display.full('head', need.header)}, and {through} through its own branch"
         pairs.append((_duty(display, need.flow, need.head), reason))
         if np.isfinite(simple.missing_flow):
-            reason = f"the flow missing today: {_fall_back(report, display, rated)}"
+            runs = float(np.nansum(report.bench.today.flow[0, rated, 1:])) > 0
+            reason = "the flow missing today" + (f": {_fall_back(report, display, rated)}" if runs else "")
             pairs.append((f"not {_duty(display, simple.missing_flow, simple.missing_head)}", reason))
     if np.isfinite(simple.rated_flow):
         reason = "the duty less the rated flows of the installed pumps"

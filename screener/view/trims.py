@@ -17,6 +17,7 @@ from screener.view.data import Origin
 from screener.view.display import Display, percent, plain, word
 from screener.view.explain import VERDICT_TONES, passing
 from screener.view.findings import found, sentence, worst_first
+from screener.view.flows import flow_cell
 
 ABREAST = 9
 WORDS = {Verdict.ACCEPTED: "pass", Verdict.CONDITIONAL: "open", Verdict.REJECTED: "FAIL"}
@@ -99,11 +100,7 @@ def _measures(result: Trims, display: Display) -> list[tuple[Column, Callable[[i
     rated = names.situation(case, header.states[header.rated])
 
     def flows(place: int, column: int) -> Callable[[int], Cell]:
-        def cell(row: int) -> Cell:
-            value = float(run.flow[row, place, column])
-            return Cell("shut", 0.0, Tone.BAD) if value == 0 else display.cell("flow", value)
-
-        return cell
+        return lambda row: flow_cell(display, run, place, column, row)
 
     def limit(values: Floats) -> Callable[[int], Cell]:
         return lambda row: display.cell("flow", values[row])

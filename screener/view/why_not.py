@@ -204,7 +204,7 @@ def ranked_cells(candidates: Candidates, display: Display, row: int) -> list[Cel
         percent(float(candidates.lowest_share[row])),
         plain(float(candidates.npsh[row]), 2),
         display.nameplate(candidates.motor[row]),
-        plain(energy / 3.6e6 / volume, 4),
+        plain(data.kwh_per_m3(energy, volume), 4),
         percent(float(np.fmin.reduce(f.firm[row]))) if f.firm.shape[1] else Cell("-"),
         plain(cautions, 0),
     ]

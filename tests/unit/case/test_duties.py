@@ -88,3 +88,20 @@ def test_too_many_combinations_are_refused(problems: Problems) -> None:
     many = "".join(pump.replace("P-2", f"P-{n}") for n in range(2, 15))
     # [D] 14 pumps taken 5 at a time: 2002
     assert problems((pump, many), ("any = 1", "any = 5")) == ["any 5 of 14 pumps is 2002 combinations"]
+
+
+def test_a_whole_number_may_be_written_with_a_point(read: Read) -> None:
+    duty = read((ANY, "running = { any = 1.0, new = true }")).duties[1]
+    assert duty.running == ((0,), (1,))
+
+
+def test_only_some_pumps_rotate(read: Read, problems: Problems) -> None:
+    duty = read((ANY, 'running = { any = 1, of = ["P-2"], new = true }')).duties[1]
+    assert duty.running == ((1,),)
+    told = problems((ANY, 'running = { any = 2, of = ["P-2", "P-3"], new = true }'))
+    assert any("P-3" in problem for problem in told)
+
+
+def test_more_hours_than_a_year_has(problems: Problems) -> None:
+    told = problems((LISTED, LISTED + ", hours = 8000"), (ANY, ANY + ", hours = 1000"))
+    assert told == ["the duties add up to 9000 h"]
