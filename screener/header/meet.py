@@ -61,16 +61,22 @@ def meet(new: BranchCurves, left: Left, installed: BranchCurves) -> Meeting:
         mark=np.full(count, Mark.SHUT, np.int8),
         culprit=np.full(count, -1),
     )
+    # Which cell between two nodes each branch curve meets the flow left in.
     reader = _reader(new)
     cell, above_low, above_high = _cells(reader, left)
     below = np.minimum(cell + (above_low > 0) + (above_high > 0), nodes)  # nodes below each branch curve
     jumping = np.isin(below - 1, list(left.parked)) if left.parked else np.zeros(count, bool)
     beyond = (below == nodes) & (left.ceiling is not None)
+
+    # Most candidates: the point in the cell.
     plain = np.flatnonzero((below > 0) & ~jumping & ~beyond)
     if plain.size:
         share = above_low.take(plain) / (above_low.take(plain) - above_high.take(plain))
         _solve(reader.take(plain), left, installed, plain, cell.take(plain), share, result)
     _mark_ceiling(left, np.flatnonzero(beyond), result)
+
+    # Those that give nothing: below the first node, or left of their falling side. `short` are sure to run,
+    # as an installed pump is past its data even without them, but the head there is not known.
     nothing = np.flatnonzero((below == 0) | (result.flow < new.low))
     bottom = left.header[0]
     short = (below == 0) & (new.low_head > bottom) & (not left.settled and left.floor >= 0)
@@ -88,6 +94,8 @@ def meet(new: BranchCurves, left: Left, installed: BranchCurves) -> Meeting:
     else:
         result.mark[shut], result.flow[shut], result.header[shut] = Mark.SHUT, 0.0, left.header[0]
         result.installed[np.ix_(shut, np.array(left.running, np.int64))] = left.installed[0]
+
+    # Those past their own data, and those in the jump of a drooping installed pump, solved with it shut.
     past = np.flatnonzero((result.flow > new.end) | short & (new.end_head > bottom))
     _blank(past, Mark.NEW_PAST_END, result)
     for node, parked in left.parked.items():
