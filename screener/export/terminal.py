@@ -30,7 +30,8 @@ def show(screen: Screen, console: Console) -> None:
         else:
             _print(block, console)
     if left_out:
-        more = f"{left_out} columns did not fit this width; a wider terminal or --format csv shows them."
+        columns = "1 column" if left_out == 1 else f"{left_out} columns"
+        more = f"{columns} did not fit this width; a wider terminal or --format csv shows more."
         _paragraph(console, more, indent=0, style=STYLES[Tone.QUIET])
 
 

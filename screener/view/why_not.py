@@ -127,7 +127,7 @@ def rejected(result: Shortlist, display: Display, rows: Any, everything: bool) -
         if len(reasons) > len(kept):
             more = f"and {len(reasons) - len(kept)} more"
             table.append([word(""), word(""), word(more, Tone.QUIET), *[word("")] * 5])
-    return Table(columns, table)
+    return Table(columns, table, ["screener explain CASE PUMP tells what would make one of them pass."])
 
 
 def _what(item: Found, display: Display) -> str:

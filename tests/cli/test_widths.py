@@ -27,7 +27,7 @@ def _printed(screen: Screen, width: int) -> list[str]:
 
 def _without_last_word(lines: list[str]) -> list[str]:
     """Lines of a screen less what it says at its end of columns that did not fit."""
-    return lines[:-1] if lines[-1].endswith("shows them.") else lines
+    return lines[:-1] if lines[-1].endswith("shows more.") else lines
 
 
 def _words(lines: list[str]) -> list[str]:
