@@ -17,6 +17,7 @@ from screener.catalog.entry import Entry
 from screener.files.document import KeyPath
 from screener.files.quantities import Quantities
 from screener.hydraulics.similarity import trimmed
+from screener.hydraulics.wear import leakage
 from screener.model.arrays import frozen
 from screener.model.case import Installed, NewPump
 from screener.model.curves import Pumps, PumpTable
@@ -78,8 +79,19 @@ def installed(
             title += f", {_shown(diameter, length)}"
         best = float(pump.bep_flow[0])
         rated_flow = best if math.isnan(rated_flow) else rated_flow
-        found.append((Installed(node["tag"], title, way, rated_flow, motor), replace(pump, **stated)))
+        pump = replace(pump, **stated)
+        loss = q.percent(node.get("condition", {}).get("head_loss", 0))
+        _check_loss(q, pump, loss, rated_flow, (*path, "condition", "head_loss"))
+        found.append((Installed(node["tag"], title, way, rated_flow, motor, loss), pump))
     return found
+
+
+def _check_loss(q: Quantities, pump: Pumps, loss: float, rated_flow: float, path: KeyPath) -> None:
+    """A head loss must be one that leakage could explain too, on the curve as measured."""
+    if loss and math.isnan(rated_flow):
+        q.bad(path, "the flow at which the head was lost is not known", "rated_flow")
+    elif loss and np.isnan(leakage(pump, loss=np.array([loss]), flow=np.array([rated_flow]))).any():
+        q.bad(path, "the curve ends before leakage could cost that much head", "re-tested points in `curve`")
 
 
 def new_pump(q: Quantities, node: Node) -> NewPump:

@@ -7,6 +7,8 @@ from dataclasses import fields
 from pathlib import Path
 from typing import Any
 
+import numpy as np
+
 from screener import criteria, units
 from screener.case import duties, liquids, pumps, system
 from screener.case.parts import loss
@@ -15,6 +17,7 @@ from screener.files import schema
 from screener.files.document import Document
 from screener.files.quantities import Quantities, dimension
 from screener.hydraulics.similarity import stack
+from screener.hydraulics.wear import uniform
 from screener.model.case import Case
 from screener.model.curves import Pumps, PumpTable
 
@@ -85,6 +88,8 @@ def read_case(document: Document, table: PumpTable) -> Case:
         q.bad(("score",), "every weight is 0", "at least one above 0")
     if q.problems:
         raise InputError(sorted(q.problems))
+    as_new = _frozen(stack([row for _, row in installed]))
+    losses = np.array([pump.head_loss for pump, _ in installed])
     return Case(
         title=data["title"],
         date=data.get("date", ""),
@@ -94,12 +99,13 @@ def read_case(document: Document, table: PumpTable) -> Case:
         levels=levels,
         suction_friction=friction,
         installed=tuple(pump for pump, _ in installed),
-        pumps=_frozen(stack([row for _, row in installed])),
+        pumps=_frozen(uniform(as_new, loss=losses)) if losses.any() else as_new,
         new_pump=new_pump,
         duties=asked,
         limits=limits,
         weights={name: float(weight) for name, weight in weights.items()},
         display=shown,
+        as_new=as_new if losses.any() else None,
     )
 
 

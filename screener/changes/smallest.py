@@ -1,8 +1,8 @@
 """The smallest changes that would let a rejected pump pass, each found by running everything again with it.
 
 A change is another case: one duty run with one installed pump fewer or without the new one, a duty that is
-not to fall under some flow, a larger motor on an installed pump. Nothing is inferred: a change is told only
-with the verdict of the whole evaluation that contains it.
+not to fall under some flow, a larger motor on an installed pump, worn pumps restored. Nothing is inferred: a
+change is told only with the verdict of the whole evaluation that contains it.
 """
 
 from __future__ import annotations
@@ -21,7 +21,7 @@ from screener.model.curves import Pumps
 from screener.model.finding import Findings, Outcome, Verdict
 from screener.model.run import Kind
 from screener.model.tables.motors import nameplates
-from screener.screening.assess import Bench, judged, set_up
+from screener.screening.assess import Bench, judged, restored, set_up
 from screener.screening.judge import inherited
 from screener.screening.states import classes
 
@@ -38,6 +38,7 @@ class ChangeKind(IntEnum):
     WITHOUT_NEW = 1
     LOWEST_FLOW = 2
     MOTOR = 3
+    RESTORED = 4
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,6 +72,10 @@ def smallest_changes(bench: Bench, pumps: Pumps, findings: Findings) -> list[lis
         for change, changed in _combinations(case, int(number)):
             _tell(change, changed, pumps, rows, result)
         _lowest_flows(case, int(number), pumps, rows, result)
+    if case.as_new is not None:
+        rows = np.flatnonzero((findings.outcome == Outcome.FAIL).any(axis=1))
+        restore = Change(ChangeKind.RESTORED, -1, -1, np.nan, Verdict.REJECTED)
+        _tell(restore, restored(case), pumps, rows, result)
     for change, changed, rows in _motors(bench, findings):
         _tell(change, changed, pumps, rows, result)
     return [sorted(changes, key=lambda change: (change.verdict, change.kind)) for changes in result]

@@ -48,7 +48,7 @@ def corners(bench: Bench, pumps: Pumps, findings: Findings) -> tuple[Corner, ...
             rest = 1.0 if high == (odd < 0) else -1.0
             sign = 1.0 if high else -1.0
             installed = np.where(np.arange(len(alike)) == odd - 1, sign, rest)
-            changed = set_up(replace(case, pumps=scaled(case.pumps, 1 + installed * others)))
+            changed = set_up(replace(case, pumps=scaled(case.pumps, 1 + installed * others), as_new=None))
             new = scaled(pumps, 1 + (sign if odd == 0 else rest) * own)
             there = judged(changed, new).candidates.findings
             fails = (there.outcome == Outcome.FAIL) & (findings.outcome != Outcome.FAIL)

@@ -120,6 +120,7 @@ class Installed:
     title      : what it is, for readers ("200-400-4 P, 390 mm")
     rated_flow : [m3/s], the flow of best efficiency where not stated (then NaN if that is unknown)
     motor      : [W] nameplate, NaN where not stated
+    head_loss  : [-] share of its head that it has lost since new, at its rated flow; 0 as new
     """
 
     tag: str
@@ -127,6 +128,7 @@ class Installed:
     branch: Branch
     rated_flow: float
     motor: float
+    head_loss: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -157,6 +159,8 @@ class Case:
                            curve, used for NPSH and pressure only
     limits               : what the case says about limits, {criterion: {limit: value in SI}}
     weights              : of the score: "efficiency", "shutoff_match", "load_share"
+    as_new               : the installed pumps before they lost head, None where none has; `pumps` then holds
+                           them with the whole curve lower
     display              : unit names to show figures in, by quantity ("flow", "head", "length", ...)
     """
 
@@ -174,3 +178,4 @@ class Case:
     limits: Mapping[str, Mapping[str, float]]
     weights: Mapping[str, float]
     display: Mapping[str, str]
+    as_new: Pumps | None = None

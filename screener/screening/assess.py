@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 from typing import Any
 
 import numpy as np
 
 from screener import ranking
 from screener.hydraulics.similarity import trimmed
+from screener.hydraulics.wear import leakage, leaking
 from screener.model.arrays import Floats, Ints
 from screener.model.case import Case
 from screener.model.curves import Pumps, PumpTable
@@ -18,7 +19,7 @@ from screener.model.run import Kind, Run
 from screener.model.tables.motors import nameplates
 from screener.screening import evaluate
 from screener.screening.header import Header, prepare
-from screener.screening.judge import judge, verdicts
+from screener.screening.judge import judge, verdicts, worse
 
 CHUNK = 8192
 """Candidates taken at a time: so many that calls cost little beside the work they do."""
@@ -28,27 +29,49 @@ Limits = Mapping[str, Mapping[str, float]]
 
 @dataclass(frozen=True, slots=True)
 class Bench:
-    """A case ready to judge candidates on: its header, the same today, and the limits that hold."""
+    """A case ready to judge candidates on: its header, the same today, and the limits that hold.
+
+    others : other readings of the installed pumps' wear, in which a candidate must pass too
+    """
 
     header: Header
     today: Run
     limits: Limits
+    others: tuple[Bench, ...] = ()
 
 
 def set_up(case: Case) -> Bench:
-    """Make a case ready for candidates."""
+    """Make a case ready for candidates, in each reading of the installed pumps' wear."""
     limits = {name: dict(values) for name, values in case.limits.items()}
     limits["shutoff-pressure"]["header"] = case.system.allowable_pressure
     motor = limits["motor-new"]
     motor["fail_above"] = min(motor["fail_above"], float(nameplates(case.new_pump.motor_series)[-1]))
     header = prepare(case, temperature_rise=limits["minimum-flow"]["temperature_rise"])
-    return Bench(header, evaluate.today(header), limits)
+    others = (set_up(_leaking(case, case.as_new)),) if case.as_new is not None else ()
+    return Bench(header, evaluate.today(header), limits, others)
+
+
+def restored(case: Case) -> Case:
+    """The same case with its installed pumps as new."""
+    as_new = case.pumps if case.as_new is None else case.as_new
+    installed = tuple(replace(pump, head_loss=0.0) for pump in case.installed)
+    return replace(case, pumps=as_new, as_new=None, installed=installed)
+
+
+def _leaking(case: Case, as_new: Pumps) -> Case:
+    """The head lost by the installed pumps, read as leakage inside them."""
+    loss = np.array([pump.head_loss for pump in case.installed])
+    flow = np.array([pump.rated_flow for pump in case.installed])
+    return replace(case, pumps=leaking(as_new, leak=leakage(as_new, loss=loss, flow=flow)), as_new=None)
 
 
 def judged(bench: Bench, pumps: Pumps) -> Judged:
-    """Judge c candidates, keeping the run; for a few."""
+    """Judge c candidates, keeping the run; for a few. Of several readings the worse finding governs."""
     run = evaluate.run(bench.header, pumps)
     findings = judge(run, bench.today, bench.limits)
+    for other in bench.others:
+        read = evaluate.run(other.header, pumps)
+        findings = worse(findings, judge(read, other.today, other.limits))
     verdict, worst = verdicts(findings)
     with np.errstate(invalid="ignore"):
         shares = np.where(np.isfinite(run.flow), run.flow, np.nan) / run.ratings.bep_flow[:, None, :]

@@ -44,6 +44,15 @@ def verdicts(findings: Findings) -> tuple[Codes, Floats]:
     return verdict.astype(np.int8), worst
 
 
+def worse(one: Findings, other: Findings) -> Findings:
+    """Of two sets of findings on the same candidates and states, the worse of each criterion."""
+    failed = (one.outcome == Outcome.FAIL) & (other.outcome == Outcome.FAIL)
+    takes = (other.outcome > one.outcome) | failed & (other.shortfall > one.shortfall)
+    return Findings(
+        *(np.where(takes, getattr(other, f.name), getattr(one, f.name)) for f in fields(Findings))
+    )
+
+
 def inherited(today: Run, limits: Limits) -> Findings:
     """What is outside its limits today already, over the criteria that judge every pump; one row."""
     runs = today.conditions.runs.copy()

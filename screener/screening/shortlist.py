@@ -15,7 +15,7 @@ from screener.model.case import Case
 from screener.model.curves import PumpTable
 from screener.model.finding import Candidates, Findings, Verdict
 from screener.model.run import Kind
-from screener.screening.assess import Bench, assess, join, judged, set_up, take
+from screener.screening.assess import Bench, assess, join, judged, restored, set_up, take
 from screener.screening.judge import inherited
 from screener.screening.ratings import efficiency_at
 from screener.screening.reach import Reach, Reason, reach
@@ -38,6 +38,8 @@ class Shortlist:
                  rejected, nearest first
     duty_efficiency : (b,) [-] efficiency of each of `best` at the flow that the rated duty asks of the new
                  pump, as a search pump by pump would see it; NaN where not known
+    restored   : (b) the same rows of `best`, judged with the installed pumps as new; None where none is worn
+    restored_total : [m3/s] what the installed pumps alone give as new at the rated duty, NaN likewise
     screened   : candidates that were run
     references : one more of each kind of installed pump
     same_as    : for each reference the row of the installed pump
@@ -50,6 +52,8 @@ class Shortlist:
     reach: Reach
     best: Candidates
     duty_efficiency: Floats
+    restored: Candidates | None
+    restored_total: float
     screened: int
     references: Candidates
     same_as: tuple[int, ...]
@@ -72,6 +76,7 @@ def shortlist(case: Case, catalog: PumpTable, *, progress: Progress | None = Non
     finalists = join([take(first, _best(first)), take(second, _best(second))])
     best = take(finalists, _best(finalists))
     best = take(best, np.lexsort((best.model, _merit(best), best.verdict)))
+    restored_best, restored_total = _restored(case, catalog, found, best)
     same_as = tuple(dict.fromkeys(int(row) for row in bench.header.alike))
     return Shortlist(
         bench=bench,
@@ -80,8 +85,10 @@ def shortlist(case: Case, catalog: PumpTable, *, progress: Progress | None = Non
         reach=found,
         best=best,
         duty_efficiency=_duty_efficiency(catalog, found, best, needs[bench.header.rated].flow),
+        restored=restored_best,
+        restored_total=restored_total,
         screened=len(first) + len(second),
-        references=judged(bench, take_pumps(case.pumps, np.array(same_as))).candidates,
+        references=judged(bench, take_pumps(case.as_new or case.pumps, np.array(same_as))).candidates,
         same_as=same_as,
         inherited=inherited(bench.today, bench.limits),
     )
@@ -107,6 +114,18 @@ def requirements(bench: Bench) -> dict[int, Requirement]:
 def best_of(candidates: Candidates) -> int:
     """The row to show of the candidates of one model."""
     return int(_best(candidates)[0])
+
+
+def _restored(
+    case: Case, catalog: PumpTable, found: Reach, best: Candidates
+) -> tuple[Candidates | None, float]:
+    """The best candidates with the installed pumps as new, and what those give then without a new one."""
+    if case.as_new is None:
+        return None, np.nan
+    bench = set_up(restored(case))
+    speed_ratio = found.speed_ratio[best.model]
+    again = assess(bench, catalog, model=best.model, diameter=best.diameter, speed_ratio=speed_ratio)
+    return again, float(bench.today.total[0, bench.header.rated])
 
 
 def _duty_efficiency(catalog: PumpTable, found: Reach, best: Candidates, flow: float) -> Floats:

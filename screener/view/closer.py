@@ -40,6 +40,8 @@ def _sentence(bench: Bench, display: Display, change: Change) -> str:
         return f"Run {duty} without the new pump; the installed pumps meet it alone"
     if change.kind == ChangeKind.LOWEST_FLOW:
         return f"Keep {duty} at {display.full('flow', change.value)} or more"
+    if change.kind == ChangeKind.RESTORED:
+        return "Restore the installed pumps to what they gave as new"
     return f"Put {display.full('power', change.value)} motors on {tag}"
 
 

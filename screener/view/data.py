@@ -32,6 +32,8 @@ CANDIDATE_KEYS = (
     "wanted_diameter",
     "speed",
     "efficiency_at_duty",
+    "restored_verdict",
+    "restored_score",
     "score",
     "efficiency",
     "power",
@@ -93,8 +95,19 @@ def candidate(result: Shortlist, display: Display, row: int) -> dict[str, Any]:
         "wanted_diameter": display.number("length", result.reach.wanted[model]),
         "speed": tidy(float(table.speed[model] * result.reach.speed_ratio[model])),
         "efficiency_at_duty": _percent(result.duty_efficiency[row]),
+        **_restored(result, row),
         **figures(result.bench, display, best, row),
         "findings": [finding(item, display) for item in found(result.bench, display, best.findings, row)],
+    }
+
+
+def _restored(result: Shortlist, row: int) -> dict[str, Any]:
+    """The same candidate beside installed pumps as new; None where none is worn."""
+    if result.restored is None:
+        return {"restored_verdict": None, "restored_score": None}
+    return {
+        "restored_verdict": VERDICTS[Verdict(int(result.restored.verdict[row]))],
+        "restored_score": tidy(float(result.restored.figures.score[row])),
     }
 
 

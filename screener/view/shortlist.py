@@ -105,12 +105,14 @@ def _ranked(result: Shortlist, display: Display, rows: Any, *, references: bool 
         Column("energy_kwh_per_m3", "kWh/m3", rank=6),
         Column("firm_flow", "firm %", "%", rank=7),
         Column("cautions", "cautions", rank=8),
+        Column("restored", "installed as new", left=True, rank=1 if result.restored is not None else 9),
     ]
     table = [
         [
             plain(number + 1, 0),
             word(result.table.ids[int(result.best.model[row])]),
             *ranked_cells(result.best, display, row),
+            _as_new(result, int(row)),
         ]
         for number, row in enumerate(rows)
     ]
@@ -118,10 +120,9 @@ def _ranked(result: Shortlist, display: Display, rows: Any, *, references: bool 
         case = result.bench.header.case
         for row, installed in enumerate(result.same_as):
             failed = result.references.verdict[row] == Verdict.REJECTED
-            tone = Tone.QUIET
             label = f"one more {case.installed[installed].tag}" + (" (fails)" if failed else "")
-            cells = [word("="), word(label), *ranked_cells(result.references, display, row)]
-            table.append([Cell(cell.text, cell.value, tone) for cell in cells])
+            cells = [word("="), word(label), *ranked_cells(result.references, display, row), word("")]
+            table.append([Cell(cell.text, cell.value, Tone.QUIET) for cell in cells])
     fails = _references_fail(result, display) if references else []
     note = [
         *fails,
@@ -130,6 +131,30 @@ def _ranked(result: Shortlist, display: Display, rows: Any, *, references: bool 
         "included.",
     ]
     return Table(columns, table, note)
+
+
+def _as_new(result: Shortlist, row: int) -> Cell:
+    """Verdict and score of a candidate beside installed pumps as new."""
+    if result.restored is None:
+        return word("")
+    verdict = data.VERDICTS[Verdict(int(result.restored.verdict[row]))]
+    return word(f"{verdict} {plain(float(result.restored.figures.score[row]), 1).text}")
+
+
+def _worn(result: Shortlist, display: Display) -> list[str]:
+    """What the installed pumps have lost, how that was read, and what restoring them alone would give."""
+    header = result.bench.header
+    worn = [f"{pump.tag} {100 * pump.head_loss:g} %" for pump in header.case.installed if pump.head_loss]
+    if not worn:
+        return []
+    state = header.states[header.rated]
+    gives = display.full("flow", result.restored_total)
+    return [
+        f"Head lost since new: {', '.join(worn)}. Every verdict holds for the whole curve lower and for "
+        "leakage inside the pump, the worse of the two shown.",
+        f"Restored, and without a new pump, the installed pumps give {gives} at "
+        f"{names.where(header.case, state)}, of {display.text('flow', state.asked)} asked.",
+    ]
 
 
 def _references_fail(result: Shortlist, display: Display) -> list[str]:
@@ -147,7 +172,7 @@ def _references_fail(result: Shortlist, display: Display) -> list[str]:
 def _notes(result: Shortlist, display: Display) -> list[str]:
     """What a reader must know about the basis of the ranking."""
     case = result.bench.header.case
-    notes = []
+    notes = _worn(result, display)
     if any(np.isnan(duty.hours) for duty in case.duties):
         notes.append(
             "Not every duty states its hours: duties are weighted equally, and no energy per year is given."
