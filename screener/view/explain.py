@@ -107,6 +107,10 @@ def _reached(result: Explained, display: Display) -> list[str]:
         lines.append(
             f"Offered from {least} to {most}; {passing(result.passing, result.steps, result.open, display)}."
         )
+    if result.bench.others:
+        lines.append(
+            "Installed pumps are worn: criteria hold for both readings of that, states show the lower curves."
+        )
     return lines
 
 
