@@ -199,6 +199,15 @@ def unit_names(dimension: str) -> list[str]:
     return [unit.name for unit in TABLE if unit.dimension == dimension]
 
 
+def dimension_of(name: str) -> str | None:
+    """Dimension of a unit by its name in the table, None for what is no unit; the first of several.
+
+    >>> dimension_of("m3/h"), dimension_of("%")
+    ('flow', None)
+    """
+    return next((unit.dimension for unit in TABLE if unit.name == name), None)
+
+
 def check_unit(name: str, dimension: str) -> str:
     """Name in the table of a unit that may be written as an alias.
 

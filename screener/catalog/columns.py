@@ -10,10 +10,9 @@ import numpy as np
 from screener.catalog.entry import TestedCurve
 from screener.files.locate import KeyPath
 from screener.files.quantities import Quantities
-from screener.hydraulics.constants import GRAVITY
+from screener.hydraulics.constants import GRAVITY, REFERENCE_DENSITY
 from screener.model.arrays import Floats, Ints, frozen
 
-REFERENCE_DENSITY = 1000.0  # kg/m3, at which powers are kept
 POWER_SLACK = 0.03  # power and efficiency may differ by this fraction of power ...
 POWER_FROM = 0.1  # ... above this fraction of the last flow; common practice, no source
 

@@ -154,7 +154,7 @@ def read_limits(
 
 
 def _limit(value: object, unit: str) -> float:
-    dimension = next((d for d in units.SI if unit in units.unit_names(d)), None)
+    dimension = units.dimension_of(unit)
     if isinstance(value, str):
         if dimension is None:
             raise ValueError(

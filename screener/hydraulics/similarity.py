@@ -130,11 +130,6 @@ def end_at(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Floa
     return np.asarray((below + weight * (above - below)) * speed_ratio)
 
 
-def largest_tested(table: PumpTable) -> Ints:
-    """Row of the largest tested curve of each model, (n,) int."""
-    return table.first[1:] - 1
-
-
 def stack(parts: Sequence[Pumps]) -> Pumps:
     """Join pumps, in order, into one set of columns."""
     return Pumps(

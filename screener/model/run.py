@@ -51,11 +51,9 @@ class Ratings:
     shutoff, summit      : [m] head of the pump at zero flow; largest head of its curve
     droop                : [-] largest rise of the curve towards more flow, as a share of its shutoff head
     header_shutoff, header_summit : [m] the same two at the header, through the branch
-    operates_from        : [m3/s] first flow of the falling side at the header
     start, end           : [m3/s] first and last measured flow
     bep_flow, minimum_flow, maximum_flow : [m3/s]
     thermal_power        : [W] largest shaft power at 1000 kg/m3 between shutoff and best efficiency
-    shutoff_power        : [W] at 1000 kg/m3 and zero flow
     region_low, region_high : [-] allowable region as a fraction of `bep_flow`
     specific_speed, suction_specific_speed : [rpm, m3/s, m]
     allowable_pressure   : [Pa gauge];  maximum_power, motor : [W];  head_tolerance : [-]
@@ -66,14 +64,12 @@ class Ratings:
     droop: Floats
     header_shutoff: Floats
     header_summit: Floats
-    operates_from: Floats
     start: Floats
     end: Floats
     bep_flow: Floats
     minimum_flow: Floats
     maximum_flow: Floats
     thermal_power: Floats
-    shutoff_power: Floats
     region_low: Floats
     region_high: Floats
     specific_speed: Floats

@@ -203,7 +203,7 @@ def _quantity(unit: str) -> str:
     """Quantity of a unit, "" where it is shown as it is: kelvin stands for a difference of temperature."""
     if unit == "K":
         return ""
-    return next((d for d in units.SI if unit in units.unit_names(d)), "")
+    return units.dimension_of(unit) or ""
 
 
 def states(bench: Bench, display: Display, run: Run, *, today: bool = False) -> list[dict[str, Any]]:

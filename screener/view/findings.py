@@ -104,7 +104,7 @@ def amount(criterion: Criterion, display: Display, value: float) -> Cell:
         return Cell(f"{100 * value:z.{2 if near else 1}f}", tidy(100 * value))
     if criterion.unit == "-":
         return Cell(f"{value:z.2f}" if abs(value) < 20 else f"{value:.0f}", tidy(value))
-    quantity = next(d for d in units.SI if criterion.unit in units.unit_names(d))
+    quantity = _quantity(criterion)
     return display.nameplate(value) if quantity == "power" else display.cell(quantity, value)
 
 
@@ -117,7 +117,12 @@ def unit_of(criterion: Criterion, display: Display) -> str:
     """The unit that values of a criterion are shown in."""
     if criterion.unit in ("%", "-"):
         return "" if criterion.unit == "-" else "%"
-    return display.unit(next(d for d in units.SI if criterion.unit in units.unit_names(d)))
+    return display.unit(_quantity(criterion))
+
+
+def _quantity(criterion: Criterion) -> str:
+    """What the values of a criterion are; a conformance test holds that its unit is in the table."""
+    return units.dimension_of(criterion.unit) or criterion.unit
 
 
 def sentence(item: Found, display: Display, pump: str) -> str:

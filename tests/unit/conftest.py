@@ -64,11 +64,9 @@ RATINGS = BOTH | {
     "droop": 0.0,
     "header_shutoff": 50.0,
     "header_summit": 50.0,
-    "operates_from": 0.0,
     "start": 0.0,
     "end": 0.2,
     "thermal_power": 30e3,
-    "shutoff_power": 25e3,
     "motor": 55e3,
 }
 PUMPS = BOTH | {

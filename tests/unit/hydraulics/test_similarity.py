@@ -13,7 +13,7 @@ from hypothesis import strategies as st
 from screener.catalog.compile import compile_table
 from screener.catalog.entry import Entry, TestedCurve
 from screener.hydraulics import interpolate
-from screener.hydraulics.similarity import end_at, head_at, largest_tested, stack, take, trimmed
+from screener.hydraulics.similarity import end_at, head_at, stack, take, trimmed
 from screener.model.arrays import frozen
 from screener.model.curves import Curves, Pumps, PumpTable
 
@@ -305,7 +305,6 @@ def test_no_diameter_asked_is_that_of_the_largest_test() -> None:
     pumps = at(TABLE, NAN)
     assert pumps.diameter[0] == 0.22
     assert pumps.curves.head[0, 0] == 50
-    assert largest_tested(TABLE).tolist() == [1, 2]
 
 
 def columns(pumps: Pumps) -> dict[str, np.ndarray]:
