@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     from screener.case.load import load, load_case
     from screener.catalog.load import load_catalog
     from screener.changes.closer import look_closer
+    from screener.changes.operation import operation
     from screener.errors import InputError, OutputError, Problem, ScreenerError, UsageError
     from screener.export.frame import to_frame
     from screener.files.shipped import demo
@@ -32,6 +33,7 @@ if TYPE_CHECKING:
 _HOMES = {
     "load": "screener.case.load",
     "look_closer": "screener.changes.closer",
+    "operation": "screener.changes.operation",
     "load_case": "screener.case.load",
     "load_catalog": "screener.catalog.load",
     "InputError": "screener.errors",
@@ -63,6 +65,7 @@ __all__ = [
     "load_case",
     "load_catalog",
     "look_closer",
+    "operation",
     "shortlist",
     "to_frame",
     "trims",

@@ -2,23 +2,28 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 
 from screener.hydraulics.constants import GRAVITY
 from screener.model.arrays import Floats
+from screener.model.case import Drive
 from screener.model.finding import Figures
 from screener.model.run import Conditions, Kind, Run
 
 SECONDS_PER_HOUR = 3600.0
 
 
-def figures(run: Run, today: Run, *, count: int, weights: Mapping[str, float]) -> Figures:
+def figures(
+    run: Run, without: Run, *, count: int, drives: Sequence[Drive], weights: Mapping[str, float]
+) -> Figures:
     """Energy, match and score of c candidates.
 
-    today   : the same states without the new pump
+    without : the same states with the new pump lost
     count   : identical new pumps
+    drives  : of the pumps, new pump first; energy is at the shafts, or before motor and drive where their
+              efficiencies are stated
     weights : "efficiency", "shutoff_match", "load_share" [points for each percent or point]
 
     score = w_eta eta - w_0 |shutoff mismatch| - w_s load-share difference, in percent and points; the
@@ -32,7 +37,8 @@ def figures(run: Run, today: Run, *, count: int, weights: Mapping[str, float]) -
     weight = np.where(duty, conditions.share_of_hours * (hours if known_hours else 1.0), 0.0)
     pumps = np.ones(run.flow.shape[2])
     pumps[0] = count
-    power = (np.where(conditions.runs, run.power, 0.0) * pumps).sum(axis=2)
+    losses = np.array([drive.motor_efficiency * drive.drive_efficiency for drive in drives])
+    power = (np.where(conditions.runs, run.power, 0.0) * (pumps / losses)).sum(axis=2)
     delivered = np.minimum(run.total, conditions.asked)
     useful = conditions.density * GRAVITY * conditions.asked * conditions.wanted_head
     weighted_power = _weighted(power, weight)
@@ -42,8 +48,9 @@ def figures(run: Run, today: Run, *, count: int, weights: Mapping[str, float]) -
     worst = np.where(np.isnan(run.shutoff_match).all(axis=1), np.nan, worst)
     share = np.fmax.reduce(run.load_share, axis=1)
     year = SECONDS_PER_HOUR if known_hours else np.nan
-    shared = conditions.runs[:, 0] & duty
-    comparable = len(np.unique(conditions.asked[shared])) > 1
+    shared = conditions.runs[:, 0] & duty & conditions.usual
+    usual = conditions.usual[conditions.rated].all()
+    comparable = usual and len(np.unique(conditions.asked[shared])) > 1
     return Figures(
         efficiency=efficiency,
         power=weighted_power / weight.sum(),
@@ -57,7 +64,7 @@ def figures(run: Run, today: Run, *, count: int, weights: Mapping[str, float]) -
             - weights["shutoff_match"] * np.abs(worst)
             - weights["load_share"] * (share if comparable else 0.0)
         ),
-        firm=_firm(run, today),
+        firm=_firm(run, without),
     )
 
 
@@ -74,13 +81,13 @@ def trips(conditions: Conditions) -> list[tuple[int, bool]]:
     ]
 
 
-def _firm(run: Run, today: Run) -> Floats:
+def _firm(run: Run, without: Run) -> Floats:
     """Share of the duty that is delivered after each trip, (c, t); `trips` says which.
 
-    Losing the new pump leaves the header as it is today, wide open.
+    Losing the new pump leaves the installed ones, wide open.
     """
     columns = [
-        np.broadcast_to((today if lost else run).total[:, place], len(run.total))
+        np.broadcast_to((without if lost else run).total[:, place], len(run.total))
         / run.conditions.asked[place]
         for place, lost in trips(run.conditions)
     ]

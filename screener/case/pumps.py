@@ -10,6 +10,8 @@ from typing import Any
 import numpy as np
 
 from screener import units
+from screener.case.condition import condition, worn
+from screener.case.drives import check_range, drive
 from screener.case.parts import NEW, Node, branch, lookup, names
 from screener.catalog.columns import Columns
 from screener.catalog.compile import compile_table
@@ -17,10 +19,10 @@ from screener.catalog.entry import Entry
 from screener.files.document import KeyPath
 from screener.files.quantities import Quantities
 from screener.hydraulics.similarity import trimmed
-from screener.hydraulics.wear import leakage
 from screener.model.arrays import frozen
 from screener.model.case import Installed, NewPump
 from screener.model.curves import Pumps, PumpTable
+from screener.model.tables.grades import head_tolerance
 
 DIAMETER_SLACK = 0.001
 """An impeller may be this fraction outside the range on offer, as diameters are rounded figures."""
@@ -59,6 +61,8 @@ def installed(
         rated_flow = q.positive(node.get("rated_flow"), "flow", (*path, "rated_flow"))
         motor = q.positive(node.get("motor"), "power", (*path, "motor"))
         way, stated = branch(q, node, path), _stated(q, node, path)
+        driven = drive(q, node, path)
+        lost = condition(q, node.get("condition"), (*path, "condition"))
         if "pump" in node["curve"]:
             curve = _of_catalog(q, node["curve"], (*path, "curve"), table, length)
         else:
@@ -80,22 +84,14 @@ def installed(
         best = float(pump.bep_flow[0])
         rated_flow = best if math.isnan(rated_flow) else rated_flow
         pump = replace(pump, **stated)
-        loss = q.percent(node.get("condition", {}).get("head_loss", 0))
-        _check_loss(q, pump, loss, rated_flow, (*path, "condition", "head_loss"))
-        found.append((Installed(node["tag"], title, way, rated_flow, motor, loss), pump))
+        check_range(q, driven, pump, path)
+        loss, fitted = worn(q, lost, node, pump=pump, rated_flow=rated_flow)
+        found.append((Installed(node["tag"], title, way, rated_flow, motor, loss, driven, fitted), pump))
     return found
 
 
-def _check_loss(q: Quantities, pump: Pumps, loss: float, rated_flow: float, path: KeyPath) -> None:
-    """A head loss must be one that leakage could explain too, on the curve as measured."""
-    if loss and math.isnan(rated_flow):
-        q.bad(path, "the flow at which the head was lost is not known", "rated_flow")
-    elif loss and np.isnan(leakage(pump, loss=np.array([loss]), flow=np.array([rated_flow]))).any():
-        q.bad(path, "the curve ends before leakage could cost that much head", "re-tested points in `curve`")
-
-
-def new_pump(q: Quantities, node: Node) -> NewPump:
-    """Return the free place on the header."""
+def new_pump(q: Quantities, node: Node, tags: Sequence[str]) -> NewPump:
+    """Return the free place on the header; `tags` of the installed pumps."""
     path = ("new_pump",)
     if "slip" in node and "frequency" not in node:
         q.bad((*path, "slip"), "slip is given without frequency", "frequency = 50 or 60")
@@ -107,6 +103,9 @@ def new_pump(q: Quantities, node: Node) -> NewPump:
         branch=branch(q, node, path),
         trim_step=TRIM_STEP if math.isnan(step) else step,
         motor_series=node.get("motor_series", "IEC"),
+        trim_law=node.get("trim_law", ""),
+        drive=drive(q, node, path),
+        replaces=lookup(q, node["replaces"], tags, (*path, "replaces"), "pump") if "replaces" in node else -1,
     )
 
 
@@ -136,6 +135,10 @@ def _of_catalog(
         q.bad(
             (*path, "diameter"), f"diameter is {node['diameter']}", f"{node['pump']!r} is offered {offered}"
         )
+        return None
+    if diameter <= table.law_inlet[model]:
+        inlet = _shown(float(table.law_inlet[model]), length)
+        q.bad((*path, "diameter"), f"diameter is {node['diameter']}", f"above that of its inlet, {inlet}")
         return None
     return table, model, diameter
 
@@ -195,4 +198,12 @@ def _stated(q: Quantities, node: Node, path: KeyPath) -> dict[str, Any]:
             what = f"allowable_region runs from {low} to {high} %"
             q.bad((*path, "allowable_region"), what, "lowest first, then highest")
         values["region_low"], values["region_high"] = q.percent(low), q.percent(high)
+    if "head_uncertainty" in node:
+        values["head_tolerance"] = q.percent(node["head_uncertainty"])
+    if "acceptance_grade" in node:
+        below, above = head_tolerance(node["acceptance_grade"])
+        values["head_tolerance"] = max(-below, above)
+        if "head_uncertainty" in node:
+            what = "acceptance_grade and head_uncertainty are both given"
+            q.bad((*path, "head_uncertainty"), what, "keep one")
     return {key: frozen([value]) for key, value in values.items()}

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+import math
+from collections.abc import Mapping, Sequence
 from dataclasses import fields
 from pathlib import Path
 from typing import Any
@@ -11,14 +12,14 @@ import numpy as np
 
 from screener import criteria, units
 from screener.case import duties, liquids, pumps, system
-from screener.case.parts import loss
+from screener.case.parts import Node, lookup, loss, not_negative
 from screener.errors import InputError
 from screener.files import schema
 from screener.files.document import Document
 from screener.files.quantities import Quantities, dimension
 from screener.hydraulics.similarity import stack
 from screener.hydraulics.wear import uniform
-from screener.model.case import Case
+from screener.model.case import Case, Tolerance
 from screener.model.curves import Pumps, PumpTable
 
 SCHEMA = "case"
@@ -66,20 +67,38 @@ def read_case(document: Document, table: PumpTable) -> Case:
     data = document.data
     q, shown = _units(document)
     air = liquids.atmosphere(q, data.get("site", {}))
-    pumped = liquids.liquids(q, data["liquid"])
     levels = system.levels(q, data["level"], atmosphere=air)
-    curve = system.system(q, data["system"], levels=levels, density=pumped[0].density, atmosphere=air)
+    surface = air + float(np.max([level.vessel_pressure for level in levels]))
+    pumped = liquids.liquids(q, data["liquid"], surface=surface, pressure=shown["pressure"])
+    names = [liquid.name for liquid in pumped]
+    measured = _measured_with(q, data["system"], names)
+    curve = system.system(
+        q, data["system"], levels=levels, density=pumped[max(measured, 0)].density, atmosphere=air
+    )
     friction = loss(q, data.get("suction", {}).get("friction"), ("suction", "friction"))
+    tolerance = _tolerance(q, data.get("tolerance", {}))
     tags = pumps.tags(q, data["installed"])
     installed = pumps.installed(q, data["installed"], table=table, length=shown["length"])
-    new_pump = pumps.new_pump(q, data["new_pump"])
+    new_pump = pumps.new_pump(q, data["new_pump"], tags)
+    end = {pump.tag: float(row.curves.end[0]) for pump, row in installed}
     asked = duties.duties(
         q,
         data["duty"],
         levels=[level.name for level in levels],
-        liquids=[liquid.name for liquid in pumped],
-        tags=tags,
+        liquids=names,
+        fleet=duties.Fleet(
+            tags=tags,
+            replaced=new_pump.replaces,
+            varies=["speed_range" in node for node in (data["new_pump"], *data["installed"])],
+            end=[math.nan, *(end.get(tag, math.nan) for tag in tags)],
+            flow=shown["flow"],
+        ),
     )
+    used = {duty.liquid for duty in asked} | ({measured} if "measured" in data["system"] else set())
+    liquids.check_pumped(q, pumped, used)
+    if len(installed) == len(tags):
+        as_new = stack([row for _, row in installed])
+        liquids.check_viscous(q, pumped, asked, tags, as_new)
     limits, wrong = criteria.read_limits(data.get("limits", {}))
     for path, what, hint in wrong:
         q.bad(("limits", *path), what, hint)
@@ -88,7 +107,7 @@ def read_case(document: Document, table: PumpTable) -> Case:
         q.bad(("score",), "every weight is 0", "at least one above 0")
     if q.problems:
         raise InputError(sorted(q.problems))
-    as_new = _frozen(stack([row for _, row in installed]))
+    as_new = _frozen(as_new)
     losses = np.array([pump.head_loss for pump, _ in installed])
     return Case(
         title=data["title"],
@@ -106,6 +125,7 @@ def read_case(document: Document, table: PumpTable) -> Case:
         weights={name: float(weight) for name, weight in weights.items()},
         display=shown,
         as_new=as_new if losses.any() else None,
+        tolerance=tolerance,
     )
 
 
@@ -113,6 +133,19 @@ def _check(document: Document) -> None:
     problems = schema.check(document, SCHEMA)
     if problems:
         raise InputError(sorted(problems))
+
+
+def _measured_with(q: Quantities, node: Node, names: Sequence[str]) -> int:
+    """Return the row of the liquid with which the system was measured: the first where nothing is stated."""
+    path = ("system", "measured", "liquid")
+    return lookup(q, node.get("measured", {}).get("liquid", names[0]), names, path, "liquid")
+
+
+def _tolerance(q: Quantities, node: Node) -> Tolerance:
+    given = {key: q.percent(node[key]) for key in ("system_curve", "reading") if key in node}
+    if "trim" in node:
+        given["trim"] = not_negative(q, node["trim"], "length", ("tolerance", "trim"))
+    return Tolerance(**given)
 
 
 def _frozen(joined: Pumps) -> Pumps:

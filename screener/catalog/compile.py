@@ -7,15 +7,21 @@ from collections.abc import Callable, Sequence
 
 import numpy as np
 
-from screener.catalog.entry import Entry, TestedCurve
+from screener.catalog.entry import Entry, TestedCurve, with_law
 from screener.hydraulics import interpolate
 from screener.hydraulics.constants import GRAVITY, REFERENCE_DENSITY
+from screener.hydraulics.trim_laws import trim_length
 from screener.model.arrays import STATIONS, Bools, Floats, Ints, frozen
 from screener.model.curves import Curves, PumpTable
 
 
-def compile_table(entries: Sequence[Entry]) -> PumpTable:
-    """Turn catalog entries into a table. Entries must be checked already; see `catalog.read`."""
+def compile_table(entries: Sequence[Entry], *, trim_law: str = "") -> PumpTable:
+    """Turn catalog entries into a table. Entries must be checked already; see `catalog.read`.
+
+    trim_law : name of the law under which every pump is put, as far as it can be; see `entry.with_law`
+    """
+    if trim_law:
+        entries = [with_law(entry, trim_law) for entry in entries]
     tests = [curve for entry in entries for curve in entry.curves]
     first = np.concatenate([[0], np.cumsum([len(entry.curves) for entry in entries])]).astype(np.int64)
     owner = np.repeat(np.arange(len(entries)), np.diff(first))
@@ -23,11 +29,14 @@ def compile_table(entries: Sequence[Entry]) -> PumpTable:
     def per_model(read: Callable[[Entry], float]) -> Floats:
         return frozen([read(entry) for entry in entries])
 
-    law = per_model(lambda e: e.flow_exponent)
+    flow_law, head_law = per_model(lambda e: e.flow_exponent), per_model(lambda e: e.head_exponent)
+    law_inlet = per_model(lambda e: e.law_inlet)
     diameter = np.array([curve.diameter for curve in tests])
-    scale = np.where(np.isnan(diameter), 1.0, diameter) ** law[owner]
-    head_law = per_model(lambda e: e.head_exponent)
-    tested, best = _columns(tests, first, scale, head_law[owner], _best_flows(tests))
+    length = trim_length(diameter=diameter, inlet=law_inlet[owner])
+    length[np.isnan(length)] = 1.0
+    tested, best = _columns(
+        tests, first, length ** flow_law[owner], length ** head_law[owner], _best_flows(tests)
+    )
     return PumpTable(
         ids=tuple(entry.id for entry in entries),
         titles=tuple(entry.title for entry in entries),
@@ -40,8 +49,9 @@ def compile_table(entries: Sequence[Entry]) -> PumpTable:
         speed=per_model(lambda e: e.speed),
         maximum=_or_tested(per_model(lambda e: e.maximum), diameter[first[1:] - 1]),
         minimum=per_model(lambda e: e.minimum),
-        flow_exponent=law,
+        flow_exponent=flow_law,
         head_exponent=head_law,
+        law_inlet=law_inlet,
         efficiency_loss=per_model(lambda e: e.efficiency_loss),
         npsh_speed_exponent=per_model(lambda e: e.npsh_speed_exponent),
         stages=frozen([entry.stages for entry in entries], np.int64),
@@ -53,7 +63,10 @@ def compile_table(entries: Sequence[Entry]) -> PumpTable:
         allowable_pressure=per_model(lambda e: e.allowable_pressure),
         maximum_power=per_model(lambda e: e.maximum_power),
         casing_volume=per_model(lambda e: e.casing_volume),
+        lowest_speed=per_model(lambda e: e.lowest_speed),
+        highest_speed=per_model(lambda e: e.highest_speed),
         head_tolerance=per_model(lambda e: e.head_tolerance),
+        trim_law=trim_law,
     )
 
 
@@ -80,10 +93,11 @@ def _best_flows(tests: Sequence[TestedCurve]) -> Floats:
 
 
 def _columns(
-    tests: Sequence[TestedCurve], first: Ints, scale: Floats, head_law: Floats, best: Floats
+    tests: Sequence[TestedCurve], first: Ints, scale: Floats, head_scale: Floats, best: Floats
 ) -> tuple[Curves, Floats]:
     """All tests on evenly spaced stations, every test of a model reaching to the same scaled flow.
 
+    scale, head_scale : of each test, what its flows and heads go with by the trim law
     Returns the curves and the flow of best efficiency of each.
     """
     counts = np.diff(first)
@@ -104,7 +118,7 @@ def _columns(
         longest = int(rows[(ends[rows] / scale[rows]).argmax()])
         for row in rows[ends[rows] < span[rows] * (1 - 1e-12)]:
             flow_ratio = scale[row] / scale[longest]
-            head_ratio = (tests[row].diameter / tests[longest].diameter) ** head_law[row]
+            head_ratio = head_scale[row] / head_scale[longest]
             beyond = at[row] > ends[row]
             for column, ratio in ((head, head_ratio), (efficiency, 1.0), (power, head_ratio * flow_ratio)):
                 _extend(column, row, longest, ratio, beyond)

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from screener.model.arrays import Floats
+from screener.model.tables.trim_laws import EQUAL_EXPONENTS, ISO_9906, exponents
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,7 +42,9 @@ class Entry:
     speed              : [rpm] at which the curves hold
     curves             : in rising diameter; a single one may be without
     maximum, minimum   : [m] impeller as offered
-    flow_exponent, head_exponent : [-] of the trim law, Q ~ D^a and H ~ D^b
+    flow_exponent, head_exponent : [-] of the trim law, Q ~ x^a and H ~ x^b, x = sqrt(D^2 - D1^2)
+    trim_law           : name of the law in `tables.trim_laws`; empty where exponents of its own are stated
+    inlet_diameter     : [m] of the impeller, D1 in the one law that uses it; else D1 is 0
     efficiency_loss    : [-] efficiency lost = efficiency_loss * (1 - D / D_tested)
     npsh_speed_exponent : [-]
     stages, eyes       : counts
@@ -50,6 +53,7 @@ class Entry:
     allowable_pressure : [Pa gauge]
     maximum_power      : [W]
     casing_volume      : [m3]
+    lowest_speed, highest_speed : [rpm] that variable speed may take
     head_tolerance     : [-] plus or minus
     """
 
@@ -63,6 +67,8 @@ class Entry:
     minimum: float = math.nan
     flow_exponent: float = 1.0
     head_exponent: float = 2.0
+    trim_law: str = ""
+    inlet_diameter: float = math.nan
     efficiency_loss: float = 0.0
     npsh_speed_exponent: float = 2.0
     stages: int = 1
@@ -74,4 +80,23 @@ class Entry:
     allowable_pressure: float = math.nan
     maximum_power: float = math.nan
     casing_volume: float = math.nan
+    lowest_speed: float = math.nan
+    highest_speed: float = math.nan
     head_tolerance: float = math.nan
+
+    @property
+    def law_inlet(self) -> float:
+        """Inlet diameter in the trim law [m], 0 where the law does without."""
+        return self.inlet_diameter if self.trim_law == ISO_9906 else 0.0
+
+
+def with_law(entry: Entry, name: str) -> Entry:
+    """Put a pump under a trim law, by its name in `tables.trim_laws`; ValueError where there is none such.
+
+    It keeps its own law where it states no inlet diameter and the named one needs it, and its own exponent
+    where it is under the law with equal exponents already.
+    """
+    flow_exponent, head_exponent = exponents(name)
+    if (name == ISO_9906 and math.isnan(entry.inlet_diameter)) or name == entry.trim_law == EQUAL_EXPONENTS:
+        return entry
+    return replace(entry, trim_law=name, flow_exponent=flow_exponent, head_exponent=head_exponent)

@@ -15,9 +15,11 @@ from screener.files.document import Document, load
 from screener.files.locate import KeyPath
 from screener.files.quantities import Quantities
 from screener.model.tables.grades import head_tolerance
+from screener.model.tables.trim_laws import AFFINITY, EQUAL_EXPONENTS, ISO_9906, exponents
 
 FORMAT = "pump-catalog/"
 DIAMETER_SLACK = 0.001  # a tested diameter may lie this fraction outside the impeller as offered
+LEAST_CUT = 0.75  # of the largest impeller, where no smallest one is stated: no smaller one is looked at
 
 
 def read(paths: Sequence[str | Path]) -> tuple[list[Entry], list[Path]]:
@@ -88,8 +90,10 @@ def _entries(pumps: Sequence[Node], quantities: Quantities) -> list[Entry]:
 
 def _entry(pump: Node, at: KeyPath, curves: tuple[TestedCurve, ...], quantities: Quantities) -> Entry:
     impeller, limits = pump.get("impeller", {}), pump.get("limits", {})
-    law, source = impeller.get("trim_law", {}), pump.get("source", {})
+    source = pump.get("source", {})
     low, high = _region(limits, at, quantities)
+    slowest, fastest = _speeds(pump, at, quantities)
+    trim_law, flow_exponent, head_exponent = _trim_law(impeller, (*at, "impeller", "trim_law"), quantities)
 
     def limit(key: str, quantity: str) -> float:
         return quantities.positive(limits.get(key), quantity, (*at, "limits", key))
@@ -103,9 +107,13 @@ def _entry(pump: Node, at: KeyPath, curves: tuple[TestedCurve, ...], quantities:
         curves=curves,
         maximum=quantities.positive(impeller.get("maximum"), "length", (*at, "impeller", "maximum")),
         minimum=quantities.positive(impeller.get("minimum"), "length", (*at, "impeller", "minimum")),
-        flow_exponent=float(law.get("flow_exponent", 1)),
-        head_exponent=float(law.get("head_exponent", 2)),
-        efficiency_loss=float(law.get("efficiency_loss", 0)),
+        flow_exponent=flow_exponent,
+        head_exponent=head_exponent,
+        trim_law=trim_law,
+        inlet_diameter=quantities.positive(
+            impeller.get("inlet_diameter"), "length", (*at, "impeller", "inlet_diameter")
+        ),
+        efficiency_loss=float(impeller.get("trim_law", {}).get("efficiency_loss", 0)),
         npsh_speed_exponent=float(pump.get("npsh_speed_exponent", 2)),
         stages=int(pump.get("stages", 1)),
         eyes=int(pump.get("eyes", 1)),
@@ -118,10 +126,33 @@ def _entry(pump: Node, at: KeyPath, curves: tuple[TestedCurve, ...], quantities:
         ),
         maximum_power=limit("maximum_power", "power"),
         casing_volume=limit("casing_volume", "volume"),
+        lowest_speed=slowest,
+        highest_speed=fastest,
         head_tolerance=_tolerance(source, at, quantities),
     )
     _check_diameters(pump, at, entry, quantities)
+    _check_inlet(pump, at, entry, quantities)
     return entry
+
+
+def _trim_law(impeller: Node, at: KeyPath, quantities: Quantities) -> tuple[str, float, float]:
+    """Name of the trim law, empty where it is stated by its exponents, and those of flow and head."""
+    law = impeller.get("trim_law", {})
+    own = [key for key in ("flow_exponent", "head_exponent") if key in law]
+    name = law.get("name", "" if own else AFFINITY)
+    for key in own if name else ():
+        what = f"the trim law has a name and {key} as well"
+        quantities.bad((*at, key), what, "give a name, or exponents of its own")
+    if "exponent" in law and name != EQUAL_EXPONENTS:
+        what = f"exponent is given without the trim law {EQUAL_EXPONENTS!r}"
+        quantities.bad((*at, "exponent"), what, f'name = "{EQUAL_EXPONENTS}", or leave it out')
+    if name == ISO_9906 and "inlet_diameter" not in impeller:
+        what = f"the trim law {name!r} needs the inlet diameter"
+        quantities.bad((*at, "name"), what, "impeller.inlet_diameter")
+    flow, head = exponents(name or AFFINITY)
+    if name == EQUAL_EXPONENTS:
+        flow = head = law.get("exponent", flow)
+    return name, float(law.get("flow_exponent", flow)), float(law.get("head_exponent", head))
 
 
 def _region(limits: Node, at: KeyPath, quantities: Quantities) -> tuple[float, float]:
@@ -132,6 +163,17 @@ def _region(limits: Node, at: KeyPath, quantities: Quantities) -> tuple[float, f
         what = f"allowable_region runs from {low} to {high} %"
         quantities.bad((*at, "limits", "allowable_region"), what, "lowest first, then highest")
     return quantities.percent(low), quantities.percent(high)
+
+
+def _speeds(pump: Node, at: KeyPath, quantities: Quantities) -> tuple[float, float]:
+    """Speeds that variable speed may take [rpm]; the curve's own must be one of them."""
+    if "speed_range" not in pump:
+        return math.nan, math.nan
+    low, high = map(float, pump["speed_range"])
+    if not low <= pump["speed"] <= high:
+        what = f"speed_range runs from {low:g} to {high:g} rpm and the curves hold at {pump['speed']:g}"
+        quantities.bad((*at, "speed_range"), what, "lowest first, and the speed of the curves within")
+    return low, high
 
 
 def _tolerance(source: Node, at: KeyPath, quantities: Quantities) -> float:
@@ -168,3 +210,19 @@ def _check_diameters(pump: Node, at: KeyPath, entry: Entry, quantities: Quantiti
             least = pump["impeller"]["minimum"]
             quantities.bad(place, f"diameter {stated} is below the smallest impeller, {least}")
         smaller = curve.diameter
+
+
+def _check_inlet(pump: Node, at: KeyPath, entry: Entry, quantities: Quantities) -> None:
+    """No impeller can be cut to its inlet, whatever the trim law."""
+    if math.isnan(entry.inlet_diameter):
+        return
+    largest = entry.curves[-1].diameter if math.isnan(entry.maximum) else entry.maximum
+    least = LEAST_CUT * largest if math.isnan(entry.minimum) else entry.minimum
+    smallest = min(entry.curves[0].diameter, least)
+    if entry.inlet_diameter >= smallest * (1 - DIAMETER_SLACK):
+        impeller = pump["impeller"]
+        what = f"inlet_diameter {impeller['inlet_diameter']} is not below the smallest impeller"
+        hint = "the smallest one offered or tested"
+        if "minimum" not in impeller:
+            hint += f"; {100 * LEAST_CUT:g} % of the largest where no minimum is stated"
+        quantities.bad((*at, "impeller", "inlet_diameter"), what, hint)

@@ -17,6 +17,10 @@ COMMANDS: Mapping[str, tuple[str, str]] = {
     ),
     "explain": ("screener.cli.explain", "Every state and every criterion of one pump."),
     "trims": ("screener.cli.trims", "The diameters of one pump side by side."),
+    "operation": (
+        "screener.cli.operation",
+        "Which pumps to run in each duty, and which may run at which header flow.",
+    ),
     "catalog": ("screener.cli.catalog", "Check catalogs of pump curves."),
     "case": ("screener.cli.case", "Check a case, or start a new one."),
 }

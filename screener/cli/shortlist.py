@@ -20,6 +20,12 @@ def shortlist(
     everything: Annotated[
         bool, typer.Option("--all", help="Show every model, those out of reach too.")
     ] = False,
+    closer: Annotated[
+        bool,
+        typer.Option(
+            "--closer", help="Look closer at the rows shown: what would make a pump pass, what holds. Slower."
+        ),
+    ] = False,
     format: common.Format = "table",
     output: common.Outputs = None,
     force: common.Force = False,
@@ -39,7 +45,12 @@ def shortlist(
     loaded = load(case, catalog or ())
     with common.progress() as progress:
         result = screen_catalog(loaded.case, loaded.catalog, progress=progress)
-    screen = view.screen(result, Origin(loaded.files), top=top, everything=everything)
+    near = None
+    if closer:
+        from screener.changes.near import look_nearer
+
+        near = look_nearer(result, top=len(result.best) if everything else top)
+    screen = view.screen(result, Origin(loaded.files), top=top, everything=everything, near=near)
     common.emit(screen, format, output, force)
     if not (result.best.verdict == Verdict.ACCEPTED).any():
         raise typer.Exit(ExitCode.NOTHING_PASSED)

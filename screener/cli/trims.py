@@ -25,13 +25,17 @@ def trims(
     """
     common.check_outputs(format, output, force)
     from screener.case.load import load
+    from screener.changes.laws import by_law
     from screener.model.finding import Verdict
     from screener.screening.one import trims as compare
     from screener.view import trims as view
     from screener.view.data import Origin
 
     loaded = load(case, catalog or ())
-    result = compare(loaded.case, loaded.catalog, common.row_of(loaded.catalog, pump))
-    common.emit(view.screen(result, Origin(loaded.files)), format, output, force)
-    if not (result.judged.candidates.verdict == Verdict.ACCEPTED).any():
+    row = common.row_of(loaded.catalog, pump)
+    result = compare(loaded.case, loaded.catalog, row)
+    candidates = result.judged.candidates
+    laws = by_law(result.bench, loaded.entries[row], steps=candidates.diameter, chosen=result.best)
+    common.emit(view.screen(result, laws, Origin(loaded.files)), format, output, force)
+    if not (candidates.verdict == Verdict.ACCEPTED).any():
         raise typer.Exit(ExitCode.NOTHING_PASSED)

@@ -6,14 +6,14 @@ from collections.abc import Mapping
 
 import numpy as np
 
-from screener.criteria import Criterion, Limit, Observed, everywhere
+from screener.criteria import Criterion, Limit, Observed
 from screener.model.run import Run
 
 
 def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     """Flow over the last measured flow; beyond it there are no data, and no verdict."""
-    value = run.flow / everywhere(run.ratings.end)
-    first = everywhere(run.ratings.start / run.ratings.end)
+    value = run.flow / run.bounds.end
+    first = run.bounds.start / run.bounds.end
     return Observed(
         value,
         run.conditions.runs & np.ones_like(value, bool),

@@ -6,7 +6,7 @@ from collections.abc import Mapping
 
 import numpy as np
 
-from screener.criteria import Criterion, Limit, Observed, everywhere, per_duty_pump, per_state
+from screener.criteria import Criterion, Limit, Observed, per_duty_pump, per_state
 from screener.hydraulics.constants import REFERENCE_DENSITY
 from screener.hydraulics.heating import thermal_minimum_flow
 from screener.model.run import Run
@@ -14,13 +14,14 @@ from screener.model.run import Run
 
 def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     """Flow over the larger of stable and thermal minimum flow; 0 for a pump held shut."""
-    ratings = run.ratings
     rise, capacity = limits["temperature_rise"], run.conditions.heat_capacity
-    power = everywhere(ratings.thermal_power)
     thermal = thermal_minimum_flow(
-        power=power, density=REFERENCE_DENSITY, heat_capacity=per_state(capacity), temperature_rise=rise
+        power=run.bounds.thermal_power,
+        density=REFERENCE_DENSITY,
+        heat_capacity=per_state(capacity),
+        temperature_rise=rise,
     )
-    stable = everywhere(ratings.minimum_flow)
+    stable = run.bounds.minimum
     value = run.flow / np.fmax(stable, thermal)
     value = np.where(np.isnan(stable + thermal) & ~(value < limits["fail_below"]), np.nan, value)
     value = np.where(run.flow == 0, 0.0, value)

@@ -10,7 +10,7 @@ from screener.model.run import Run
 
 def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     """Flow of the new pump at the rated duty, over its flow of best efficiency."""
-    value = (run.flow[:, :, 0] / run.ratings.bep_flow[:, :1])[:, :, None]
+    value = (run.flow[:, :, 0] / run.bounds.best[:, :, 0])[:, :, None]
     return Observed(value, per_state(run.conditions.rated), **limits)
 
 

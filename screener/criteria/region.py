@@ -13,16 +13,16 @@ from screener.model.run import Run
 def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     """Flow over the flow of best efficiency, in the duties. Shut pumps are left to minimum-flow."""
     ratings = run.ratings
-    value = run.flow / everywhere(ratings.bep_flow)
+    value = run.flow / run.bounds.best
     applies = per_duty_pump(run) & ~(run.flow <= 0) & ~np.isinf(run.flow)
-    stated = ratings.maximum_flow / ratings.bep_flow
-    high = np.where(np.isnan(ratings.region_high), stated, ratings.region_high)
+    stated = run.bounds.largest / run.bounds.best
+    high = np.where(np.isnan(everywhere(ratings.region_high)), stated, everywhere(ratings.region_high))
     steep = ratings.specific_speed > 87
     return Observed(
         value,
         applies,
         fail_below=everywhere(np.nan_to_num(ratings.region_low, nan=-np.inf)),
-        fail_above=everywhere(np.nan_to_num(high, nan=np.inf)),
+        fail_above=np.nan_to_num(high, nan=np.inf),
         caution_below=everywhere(np.where(steep, limits["caution_below_above_87"], limits["caution_below"])),
         caution_above=everywhere(np.where(steep, limits["caution_above_above_87"], limits["caution_above"])),
     )

@@ -6,13 +6,13 @@ from collections.abc import Mapping
 
 import numpy as np
 
-from screener.criteria import Criterion, Limit, Observed, everywhere, per_state
+from screener.criteria import Criterion, Limit, Observed, per_state
 from screener.model.run import Kind, Run
 
 
 def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     """Flow over the flow of best efficiency, wide open and after trips."""
-    value = run.flow / everywhere(run.ratings.bep_flow)
+    value = run.flow / run.bounds.best
     upset = per_state(run.conditions.kind != Kind.DUTY) & run.conditions.runs
     return Observed(value, upset & ~(run.flow <= 0) & ~np.isinf(run.flow), **limits)
 

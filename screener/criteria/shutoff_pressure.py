@@ -14,7 +14,7 @@ from screener.model.run import Run
 def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     """Largest suction pressure plus largest head of the curve, over the lower of the two ratings."""
     conditions, ratings = run.conditions, run.ratings
-    head = once(ratings.summit[:, 0]) * per_state(conditions.density * GRAVITY)
+    head = run.bounds.summit[:, :, :1] * per_state(conditions.density * GRAVITY)
     pressure = per_state(conditions.suction_pressure) + head
     allowed = np.fmin(ratings.allowable_pressure[:, 0], limits["header"])
     known = ~np.isnan(ratings.allowable_pressure[:, 0]) & ~np.isnan(limits["header"])

@@ -12,7 +12,7 @@ from screener.model.run import Run
 
 def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     """Shutoff head at the header over the header head that the others hold, less one."""
-    value = everywhere(run.ratings.header_shutoff) / run.start_header - 1
+    value = run.bounds.opening / run.start_header - 1
     tolerance = np.where(
         np.isnan(run.ratings.head_tolerance), limits["unknown_tolerance"], run.ratings.head_tolerance
     )

@@ -98,6 +98,7 @@ def meet(new: BranchCurves, left: Left, installed: BranchCurves) -> Meeting:
     # Those past their own data, and those in the jump of a drooping installed pump, solved with it shut.
     past = np.flatnonzero((result.flow > new.end) | short & (new.end_head > bottom))
     _blank(past, Mark.NEW_PAST_END, result)
+    _blank(np.flatnonzero(np.isnan(new.low_head)), Mark.NEW_NOT_MEASURED, result)
     for node, parked in left.parked.items():
         rows = np.flatnonzero(jumping & (below - 1 == node))
         if rows.size:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from screener.hydraulics.constants import GRAVITY
+from screener.hydraulics.liquids import water
 from screener.model.arrays import Floats, Real
 
 
@@ -53,3 +54,42 @@ def dead_head_heating_rate(*, power: Real, mass: Real, heat_capacity: Real) -> F
     10.755
     """
     return np.asarray(power / (mass * heat_capacity))
+
+
+def time_to_boil(*, power: Real, mass: Real, heat_capacity: Real, start: Real, boiling: Real) -> Floats:
+    """Time [s] in which a pump running against a closed valve brings its liquid to the boil.
+
+    power : [W] at zero flow.  mass : [kg] of liquid in the casing.  heat_capacity : [J/(kg K)].
+    start, boiling : [degC] of the liquid, and at which it boils; 0 s where it is as hot already.
+    Any shapes that broadcast. Safe: only the liquid in the casing is warmed, nothing is credited to the
+    metal or lost to the surroundings.
+    Source: heat balance.
+
+    >>> seconds = time_to_boil(power=np.array(15e3), mass=np.array(20.0), heat_capacity=np.array(4184.0),
+    ...                        start=np.array(20.0), boiling=np.array(100.0))
+    >>> float(seconds.round(0))
+    446.0
+    """
+    rate = dead_head_heating_rate(power=power, mass=mass, heat_capacity=heat_capacity)
+    with np.errstate(divide="ignore"):
+        return np.asarray(np.maximum(np.subtract(boiling, start), 0.0) / rate)
+
+
+def boiling_temperature(*, pressure: Floats) -> Floats:
+    """Temperature at which water boils [degC], the inverse of `liquids.water.vapour_pressure`.
+
+    pressure : [Pa absolute], any shape; NaN where water would boil outside 0 to 200 degC.
+    Source: as that function.
+
+    >>> boiling_temperature(pressure=np.array([2339.2, 101325.0, 2e6])).round(2)
+    array([20.  , 99.97,   nan])
+    """
+    low, high = np.full_like(pressure, water.LOWEST), np.full_like(pressure, water.HIGHEST)
+    outside = (pressure < water.vapour_pressure(temperature=low)) | (
+        pressure > water.vapour_pressure(temperature=high)
+    )
+    for _ in range(60):
+        middle = (low + high) / 2
+        colder = water.vapour_pressure(temperature=middle) < pressure
+        low, high = np.where(colder, middle, low), np.where(colder, high, middle)
+    return np.where(outside | np.isnan(pressure), np.nan, (low + high) / 2)

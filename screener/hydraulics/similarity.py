@@ -9,6 +9,7 @@ import numpy as np
 
 from screener.hydraulics import interpolate
 from screener.hydraulics.similarity_numbers import specific_speed, suction_specific_speed
+from screener.hydraulics.trim_laws import trim_head_uncertainty, trim_length
 from screener.model.arrays import Floats, Ints
 from screener.model.curves import Curves, Pumps, PumpTable
 
@@ -18,8 +19,9 @@ def trimmed(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Flo
 
     Between two tested diameters both curves are brought there by the trim law and mixed linearly in
     diameter at the same scaled flow; elsewhere the nearest tested curve follows the trim law
-    Q ~ D^a, H ~ D^b, P ~ D^(a+b). Speed: Q ~ n, H ~ n^2, P ~ n^3, NPSHr ~ n^x. A trim leaves NPSHr at a
-    given flow, the stable minimum flow and the suction specific speed as they were.
+    Q ~ x^a, H ~ x^b, P ~ x^(a+b), x being the diameter but where the law uses that of the inlet; see
+    `trim_length`. Speed: Q ~ n, H ~ n^2, P ~ n^3, NPSHr ~ n^x. A trim leaves NPSHr at a given flow, the
+    stable minimum flow and the suction specific speed as they were.
 
     model       : (c,) int rows of the table
     diameter    : (c,) [m]; NaN runs a model at the diameter of its largest test
@@ -29,11 +31,13 @@ def trimmed(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Flo
     low, high, weight = _neighbours(table, model, diameter)
     tested = table.tested
     law_flow, law_head = table.flow_exponent[model], table.head_exponent[model]
-    cut_low, cut_high = _ratio(diameter, table.diameter[low]), _ratio(diameter, table.diameter[high])
+    cut_low, cut_high = _cut(table, low, model, diameter), _cut(table, high, model, diameter)
     flow_low, flow_high = cut_low**law_flow, cut_high**law_flow
     head_low, head_high = cut_low**law_head, cut_high**law_head
-    nearest = np.where(weight < 0.5, cut_low, cut_high)
-    lost = table.efficiency_loss[model] * np.where(low == high, np.maximum(1 - nearest, 0), 0)
+    nearest = _ratio(diameter, table.diameter[np.where(weight < 0.5, low, high)])
+    alone = low == high
+    lost = table.efficiency_loss[model] * np.where(alone, np.maximum(1 - nearest, 0), 0)
+    uncertainty = np.where(alone, trim_head_uncertainty(ratio=nearest, law_head=head_low), 0)
     ratio = speed_ratio
 
     def blend(values: Floats, scale_low: Floats, scale_high: Floats, either: bool = False) -> Floats:
@@ -76,6 +80,8 @@ def trimmed(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Flo
         maximum=table.maximum[model],
         minimum=table.minimum[model],
         from_test=np.where(np.isnan(nearest), 0.0, np.abs(nearest - 1)),
+        trim_uncertainty=uncertainty,
+        law_inlet=table.law_inlet[model],
         speed=table.speed[model] * ratio,
         bep_flow=blend(table.bep_flow, flow_low * ratio, flow_high * ratio, either=True),
         specific_speed=number,
@@ -88,6 +94,10 @@ def trimmed(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Flo
         maximum_power=table.maximum_power[model],
         casing_volume=table.casing_volume[model],
         head_tolerance=table.head_tolerance[model],
+        lowest_speed=table.lowest_speed[model],
+        highest_speed=table.highest_speed[model],
+        stages=table.stages[model].astype(np.float64),
+        npsh_speed_exponent=table.npsh_speed_exponent[model],
     )
 
 
@@ -113,7 +123,7 @@ def _read(
 ) -> tuple[Floats, Floats, Floats]:
     """First and last measured flow of tested curves brought to a diameter, and head at a flow between."""
     tested, last = table.tested, table.tested.head.shape[1] - 1
-    cut = _ratio(diameter, table.diameter[row])
+    cut = _cut(table, row, model, diameter)
     law_flow = cut ** table.flow_exponent[model] * speed_ratio
     law_head = cut ** table.head_exponent[model] * speed_ratio**2
     station = np.minimum(np.maximum(flow / (tested.span[row] * law_flow) * last, 0), last)
@@ -125,8 +135,8 @@ def end_at(table: PumpTable, *, model: Ints, diameter: Floats, speed_ratio: Floa
     """Flow of the last measured point of models at a diameter. All (c,); returns (c,) [m3/s]."""
     low, high, weight = _neighbours(table, model, diameter)
     law = table.flow_exponent[model]
-    below = table.tested.end[low] * _ratio(diameter, table.diameter[low]) ** law
-    above = table.tested.end[high] * _ratio(diameter, table.diameter[high]) ** law
+    below = table.tested.end[low] * _cut(table, low, model, diameter) ** law
+    above = table.tested.end[high] * _cut(table, high, model, diameter) ** law
     return np.asarray((below + weight * (above - below)) * speed_ratio)
 
 
@@ -166,6 +176,14 @@ def _neighbours(table: PumpTable, model: Ints, diameter: Floats) -> tuple[Ints, 
     share = np.where(np.isnan(share), 0.0, share)
     exact = share == 0
     return low, np.where(exact, low, high), share
+
+
+def _cut(table: PumpTable, row: Ints, model: Ints, diameter: Floats) -> Floats:
+    """What the trim laws of models raise to their exponents, from tested curves to a diameter, (c,) [-]."""
+    inlet = table.law_inlet[model]
+    return _ratio(
+        trim_length(diameter=diameter, inlet=inlet), trim_length(diameter=table.diameter[row], inlet=inlet)
+    )
 
 
 def _ratio(diameter: Floats, tested: Floats) -> Floats:

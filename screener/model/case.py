@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from enum import IntEnum
+from enum import IntEnum, IntFlag
 
 from screener.model.arrays import Floats
 from screener.model.curves import Pumps
@@ -15,7 +15,8 @@ class Liquid:
     """A liquid at the temperature it is pumped.
 
     density [kg/m3], viscosity [m2/s] kinematic, vapour_pressure [Pa absolute], heat_capacity [J/(kg K)];
-    temperature [degC], NaN where the liquid was given by its numbers alone.
+    temperature [degC], NaN where the liquid was given by its numbers alone;
+    viscous: pump curves are corrected for its viscosity, where that matters.
     """
 
     name: str
@@ -24,6 +25,7 @@ class Liquid:
     viscosity: float
     vapour_pressure: float
     heat_capacity: float
+    viscous: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -70,10 +72,11 @@ class Level:
 
 
 class Control(IntEnum):
-    """Who holds the flow of a duty."""
+    """Who holds the flow of a duty: the users' valves, nobody, or the pumps that vary their speed."""
 
     THROTTLED = 0
     OPEN = 1
+    SPEED = 2
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,6 +90,7 @@ class Duty:
     new    : whether the new pump runs, for each combination
     hours  : per year, NaN where not stated
     rated  : the duty on which the data sheet is written; exactly one in a case
+    bypass : [m3/s] taken back at each pump upstream of its check valve, new pump first; empty where none is
     """
 
     name: str
@@ -98,6 +102,7 @@ class Duty:
     control: Control
     hours: float
     rated: bool
+    bypass: tuple[float, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -114,6 +119,68 @@ class Branch:
 
 
 @dataclass(frozen=True, slots=True)
+class Drive:
+    """What drives a pump.
+
+    lowest, highest  : [-] speeds that it may take, relative to its speed at load; 1 and 1 at fixed speed
+    motor_efficiency, drive_efficiency : [-], 1 where not stated: then energy is that of the shaft
+    """
+
+    lowest: float = 1.0
+    highest: float = 1.0
+    motor_efficiency: float = 1.0
+    drive_efficiency: float = 1.0
+
+    @property
+    def varies(self) -> bool:
+        """Whether its speed can be changed."""
+        return self.lowest < self.highest
+
+
+@dataclass(frozen=True, slots=True)
+class WearFit:
+    """How worn a pump is by points measured in the field, in both ways that wear works.
+
+    points        : how many there are
+    reading       : [-] standard error of a head as read; no uncertainty is smaller than it allows
+    loss          : [-] share of its head that is lost at every flow, 0 to 0.6
+    leak          : [m3/s] that goes round inside it, 0 or more
+    loss_error, leak_error : their standard uncertainties; infinite where the points do not tell
+    loss_residual, leak_residual : [m] root mean square distance of the points from the curve so worn
+    prefers       : the reading that comes nearer to the points
+    cautions      : what the points leave open
+    """
+
+    class Reading(IntEnum):
+        """Which way of wearing the points speak for."""
+
+        NEITHER = 0
+        LOSS = 1
+        LEAK = 2
+
+    class Caution(IntFlag):
+        """Why a fit may mislead."""
+
+        NONE = 0
+        FEW_POINTS = 1
+        SHUTOFF_INFERRED = 2
+        NARROW = 4
+        ABOVE_NEW = 8
+        CURVE_ENDS = 16
+
+    points: int
+    reading: float
+    loss: float
+    loss_error: float
+    loss_residual: float
+    leak: float
+    leak_error: float
+    leak_residual: float
+    prefers: Reading
+    cautions: Caution
+
+
+@dataclass(frozen=True, slots=True)
 class Installed:
     """One installed pump; its curve and figures are the row of the same number in `Case.pumps`.
 
@@ -121,6 +188,7 @@ class Installed:
     rated_flow : [m3/s], the flow of best efficiency where not stated (then NaN if that is unknown)
     motor      : [W] nameplate, NaN where not stated
     head_loss  : [-] share of its head that it has lost since new, at its rated flow; 0 as new
+    wear       : how that share was found, None where it was stated
     """
 
     tag: str
@@ -129,6 +197,8 @@ class Installed:
     rated_flow: float
     motor: float
     head_loss: float = 0.0
+    drive: Drive = field(default_factory=Drive)
+    wear: WearFit | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -140,6 +210,9 @@ class NewPump:
     slip      : [-] of the motor at load, NaN where not stated: then the curve's own speed is kept
     trim_step : [m] diameters are rounded up to whole steps
     motor_series : name in `tables.motors`
+    drive     : speed range and efficiencies; a model's own speed range narrows it
+    replaces  : row of the installed pump that leaves the header when the new one comes, -1 where none does
+    trim_law  : name in `tables.trim_laws` of the law that replaces those of the models; empty where none does
     """
 
     count: int
@@ -148,6 +221,23 @@ class NewPump:
     branch: Branch
     trim_step: float
     motor_series: str
+    drive: Drive = field(default_factory=Drive)
+    replaces: int = -1
+    trim_law: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Tolerance:
+    """How far what was stated may be off.
+
+    system_curve : [-] of the friction head, plus or minus
+    trim         : [m] of the impeller diameter, plus or minus
+    reading      : [-] of the head of digitised points, plus or minus
+    """
+
+    system_curve: float = 0.05
+    trim: float = 0.0005
+    reading: float = 0.01
 
 
 @dataclass(frozen=True, slots=True)
@@ -162,6 +252,7 @@ class Case:
     as_new               : the installed pumps before they lost head, None where none has; `pumps` then holds
                            them with the whole curve lower
     display              : unit names to show figures in, by quantity ("flow", "head", "length", ...)
+    tolerance            : of what the case says
     """
 
     title: str
@@ -179,3 +270,4 @@ class Case:
     weights: Mapping[str, float]
     display: Mapping[str, str]
     as_new: Pumps | None = None
+    tolerance: Tolerance = field(default_factory=Tolerance)

@@ -45,7 +45,7 @@ class PumpTable:
 
     The tested curves of model i are rows first[i]:first[i + 1] of `diameter`, `bep_flow` and `tested`,
     in rising diameter. All curves of one model share one axis of flow scaled by the trim law
-    (span / diameter ** flow_exponent is the same), so that a blend between them is a plain mix.
+    (span / x ** flow_exponent is the same), so that a blend between them is a plain mix.
 
     ids, titles, constructions, sources : n strings each; `sources` says where the curve came from
     first            : (n + 1,) int
@@ -54,7 +54,8 @@ class PumpTable:
     tested           : m curves
     speed            : (n,) [rpm] at which the curves hold
     maximum, minimum : (n,) [m] impeller as offered; NaN where not stated
-    flow_exponent, head_exponent : (n,) [-] of the trim law, Q ~ D^a and H ~ D^b
+    flow_exponent, head_exponent : (n,) [-] of the trim law, Q ~ x^a and H ~ x^b, x = sqrt(D^2 - D1^2)
+    law_inlet        : (n,) [m] inlet diameter D1 of the impeller in a trim law that uses it, else 0
     efficiency_loss  : (n,) [-] efficiency lost = efficiency_loss * (1 - D / D_tested)
     npsh_speed_exponent : (n,) [-]
     stages, eyes     : (n,) int
@@ -64,7 +65,9 @@ class PumpTable:
     allowable_pressure : (n,) [Pa] gauge
     maximum_power    : (n,) [W]
     casing_volume    : (n,) [m3]
+    lowest_speed, highest_speed : (n,) [rpm] that variable speed may take, NaN where not stated
     head_tolerance   : (n,) [-] plus or minus, from the acceptance grade or as stated; NaN where neither
+    trim_law         : name of the law that replaces those of the models; empty where each keeps its own
     """
 
     ids: tuple[str, ...]
@@ -80,6 +83,7 @@ class PumpTable:
     minimum: Floats
     flow_exponent: Floats
     head_exponent: Floats
+    law_inlet: Floats
     efficiency_loss: Floats
     npsh_speed_exponent: Floats
     stages: Ints
@@ -91,7 +95,10 @@ class PumpTable:
     allowable_pressure: Floats
     maximum_power: Floats
     casing_volume: Floats
+    lowest_speed: Floats
+    highest_speed: Floats
     head_tolerance: Floats
+    trim_law: str = ""
 
     def __len__(self) -> int:
         return len(self.ids)
@@ -108,6 +115,9 @@ class Pumps:
     diameter        : (c,) [m], NaN where the model states none
     maximum, minimum : (c,) [m] as offered
     from_test       : (c,) [-] distance to the nearest tested diameter, as a fraction of that; 0 = tested
+    trim_uncertainty : (c,) [-] share of its head by which it may lie below its trim law; 0 at tested
+                      diameters and between them
+    law_inlet       : (c,) [m] as in `PumpTable`
     speed           : (c,) [rpm]
     bep_flow        : (c,) [m3/s] at this diameter and speed
     specific_speed  : (c,) [rpm, m3/s, m] n_q per stage and eye, at the largest diameter
@@ -115,6 +125,8 @@ class Pumps:
     minimum_flow, maximum_flow : (c,) [m3/s]
     region_low, region_high    : (c,) [-] fraction of the flow of best efficiency
     allowable_pressure, maximum_power, casing_volume, head_tolerance : (c,) as in `PumpTable`
+    lowest_speed, highest_speed : (c,) [rpm] as in `PumpTable`
+    stages, npsh_speed_exponent : (c,) [-]
     """
 
     curves: Curves
@@ -123,6 +135,8 @@ class Pumps:
     maximum: Floats
     minimum: Floats
     from_test: Floats
+    trim_uncertainty: Floats
+    law_inlet: Floats
     speed: Floats
     bep_flow: Floats
     specific_speed: Floats
@@ -135,6 +149,10 @@ class Pumps:
     maximum_power: Floats
     casing_volume: Floats
     head_tolerance: Floats
+    lowest_speed: Floats
+    highest_speed: Floats
+    stages: Floats
+    npsh_speed_exponent: Floats
 
     def __len__(self) -> int:
         return len(self.model)

@@ -5,6 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from enum import IntEnum
 
+import numpy as np
+
 from screener.model.arrays import Bools, Codes, Floats, Ints
 from screener.model.curves import Pumps
 
@@ -15,6 +17,15 @@ class Kind(IntEnum):
     DUTY = 0
     WIDE_OPEN = 1
     TRIP = 2
+
+
+class Speed(IntEnum):
+    """Who sets the speed of the pumps that can vary it."""
+
+    AT_LOAD = 0
+    LOWEST = 1
+    HIGHEST = 2
+    HELD = 3
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,6 +41,9 @@ class State:
     throttled   : the users hold that flow
     static      : [m] of the liquid pumped
     share       : [-] share of the duty's hours
+    liquid      : row of the case
+    speed       : `Speed`; HELD where the pumps that vary their speed give the flow asked between them
+    bypass      : [m3/s] taken back at each pump, new pump first; empty where none is
     """
 
     duty: int
@@ -42,18 +56,21 @@ class State:
     throttled: bool
     static: float
     share: float
+    liquid: int
+    speed: Speed = Speed.AT_LOAD
+    bypass: tuple[float, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
 class Ratings:
-    """Figures of each pump that no state changes, new pump first: (c, 1 + p), NaN where not known.
+    """Figures of each pump at its speed at load in the liquid of the rated duty, new pump first.
+
+    All (c, 1 + p), NaN where not known.
 
     shutoff, summit      : [m] head of the pump at zero flow; largest head of its curve
     droop                : [-] largest rise of the curve towards more flow, as a share of its shutoff head
     header_shutoff, header_summit : [m] the same two at the header, through the branch
-    start, end           : [m3/s] first and last measured flow
     bep_flow, minimum_flow, maximum_flow : [m3/s]
-    thermal_power        : [W] largest shaft power at 1000 kg/m3 between shutoff and best efficiency
     region_low, region_high : [-] allowable region as a fraction of `bep_flow`
     specific_speed, suction_specific_speed : [rpm, m3/s, m]
     allowable_pressure   : [Pa gauge];  maximum_power, motor : [W];  head_tolerance : [-]
@@ -64,12 +81,9 @@ class Ratings:
     droop: Floats
     header_shutoff: Floats
     header_summit: Floats
-    start: Floats
-    end: Floats
     bep_flow: Floats
     minimum_flow: Floats
     maximum_flow: Floats
-    thermal_power: Floats
     region_low: Floats
     region_high: Floats
     specific_speed: Floats
@@ -81,12 +95,39 @@ class Ratings:
 
 
 @dataclass(frozen=True, slots=True)
+class Bounds:
+    """What bounds each pump at the speed and in the liquid of a state, new pump first.
+
+    All (c, s, 1 + p), NaN where not known; s is 1 where all states are alike.
+
+    speed          : [-] relative to the speed at load
+    start, end     : [m3/s] first and last measured flow
+    best, minimum, largest : [m3/s] best efficiency; stable minimum; largest allowed
+    summit         : [m] largest head of the curve, NaN where shutoff was not measured
+    opening        : [m] head at the header with the check valve shut, at the highest speed it may take there
+    thermal_power  : [W] largest shaft power at 1000 kg/m3 between shutoff and best efficiency
+    """
+
+    speed: Floats
+    start: Floats
+    end: Floats
+    best: Floats
+    minimum: Floats
+    largest: Floats
+    summit: Floats
+    opening: Floats
+    thermal_power: Floats
+
+
+@dataclass(frozen=True, slots=True)
 class Conditions:
     """What holds in each state whatever the candidate, (s,) but where said.
 
     duty, kind : int, `Kind`
     rated, lowest : whether it is the state of the rated duty, and of the lowest duty that the new pump shares
-    open      : nothing is throttled
+    usual     : at load, in the liquid of the rated duty, without a bypass
+    open      : nothing is throttled, as wide open and after trips
+    held      : pumps that vary their speed hold the flow
     asked     : [m3/s] flow of the duty
     wanted_head : [m] header head at which the system takes that flow
     density   : [kg/m3];  heat_capacity : [J/(kg K)];  vapour_pressure : [Pa]
@@ -99,7 +140,9 @@ class Conditions:
     kind: Codes
     rated: Bools
     lowest: Bools
+    usual: Bools
     open: Bools
+    held: Bools
     asked: Floats
     wanted_head: Floats
     density: Floats
@@ -120,19 +163,24 @@ class Run:
 
     pumps        : the c candidates
     ratings      : (c, 1 + p)
+    bounds       : (c, s, 1 + p) or (c, 1, 1 + p)
     conditions   : (s,)
     header       : (c, s) [m] header head
     total        : (c, s) [m3/s] taken by the users
     flow, head, power, efficiency, npsh_available, npsh_required : (c, s, 1 + p)
-                   [m3/s, m, W, -, m, m], of one pump each
+                   [m3/s, m, W, -, m, m], of one pump each; flow through the pump, its bypass included
     start_header : (c, s, 1 + p) [m] header head that the others hold when this pump is to start
     spare_head   : (c, 1 + p) [m] head that each pump may lose before it falls under its minimum flow at
                    the lowest common duty
     shutoff_match : (c, p) [-] signed;  load_share : (c, p) [-]
+    opening_speed, least_speed : (c, s) [-] of the new pump with the system open, the others at their speed at
+                   load: at which its check valve opens, at which it reaches its minimum flow; relative to
+                   its speed at load, NaN where it does not vary
     """
 
     pumps: Pumps
     ratings: Ratings
+    bounds: Bounds
     conditions: Conditions
     header: Floats
     total: Floats
@@ -146,3 +194,10 @@ class Run:
     spare_head: Floats
     shutoff_match: Floats
     load_share: Floats
+    opening_speed: Floats
+    least_speed: Floats
+
+
+def in_state(values: Floats, place: int) -> Floats:
+    """One of `Bounds` in one state, (c, 1 + p)."""
+    return np.asarray(values[:, place if values.shape[1] > 1 else 0])

@@ -6,14 +6,14 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from screener.header.branch import branch_curves
 from screener.header.left import flow_left
 from screener.header.meet import meet
 from screener.header.system import SystemCurve
 from screener.model.arrays import Floats, frozen
 from screener.model.case import Loss
 from screener.model.finding import Judged
-from screener.model.run import Kind
+from screener.model.run import Kind, Speed
+from screener.screening.evaluate import fit
 from screener.screening.header import Header
 
 
@@ -38,28 +38,37 @@ def valves_as_set(header: Header, judged: Judged) -> tuple[AsSet, ...]:
 
     The valves of a duty are a resistance in the square of flow that takes what the system left over.
     """
-    case, run = header.case, judged.run
-    new = branch_curves(run.pumps.curves, [case.new_pump.branch])
+    run = judged.run
     found = []
     for place, state in enumerate(header.states):
         stands = float(run.header[0, place])
-        if state.kind != Kind.DUTY or not state.new or not state.throttled or not stands > state.static:
+        held = state.speed == Speed.HELD
+        if (
+            state.kind != Kind.DUTY
+            or not state.new
+            or not state.throttled
+            or held
+            or not stands > state.static
+        ):
             continue
+        standing = header.standing[place]
+        new = fit(header, run.pumps, standing.setting)
         resistance = (stands - state.static) / float(run.total[0, place]) ** 2
         nothing = frozen(np.empty((1, 0)))
         curve = SystemCurve(state.static, Loss((resistance,), (2.0,)), np.inf, nothing, nothing)
         for first in dict.fromkeys(int(header.alike[row]) for row in state.running):
             lost = next(row for row in state.running if header.alike[row] == first)
             left = flow_left(
-                header.branches,
+                standing.branches,
                 running=[row for row in state.running if row != lost],
                 curve=curve,
                 asked=state.asked,
                 throttled=False,
                 count=state.new,
             )
-            met = meet(new, left, header.branches)
-            flow = np.concatenate([met.flow, met.installed[0]])
-            total = float(state.new * flow[0] + np.nansum(flow[1:]))
+            met = meet(new.branches, left, standing.branches)
+            given = np.concatenate([met.flow, met.installed[0]])
+            total = float(state.new * given[0] + np.nansum(given[1:]))
+            flow = given + np.append(new.bypass, standing.bypass)
             found.append(AsSet(place, lost, float(met.header[0]), total, flow))
     return tuple(found)

@@ -10,7 +10,7 @@ import numpy as np
 
 from screener import ranking
 from screener.hydraulics.similarity import trimmed
-from screener.hydraulics.wear import leakage, leaking
+from screener.hydraulics.wear import leaking, leaks
 from screener.model.arrays import Floats, Ints
 from screener.model.case import Case
 from screener.model.curves import Pumps, PumpTable
@@ -31,11 +31,13 @@ Limits = Mapping[str, Mapping[str, float]]
 class Bench:
     """A case ready to judge candidates on: its header, the same today, and the limits that hold.
 
+    without : the same with a new pump that has come and is lost: other than `today` where it replaces one
     others : other readings of the installed pumps' wear, in which a candidate must pass too
     """
 
     header: Header
     today: Run
+    without: Run
     limits: Limits
     others: tuple[Bench, ...] = ()
 
@@ -48,21 +50,21 @@ def set_up(case: Case) -> Bench:
     motor["fail_above"] = min(motor["fail_above"], float(nameplates(case.new_pump.motor_series)[-1]))
     header = prepare(case, temperature_rise=limits["minimum-flow"]["temperature_rise"])
     others = (set_up(_leaking(case, case.as_new)),) if case.as_new is not None else ()
-    return Bench(header, evaluate.today(header), limits, others)
+    today = evaluate.today(header)
+    lost = today if case.new_pump.replaces < 0 else evaluate.today(header, replaced=False)
+    return Bench(header, today, lost, limits, others)
 
 
 def restored(case: Case) -> Case:
     """The same case with its installed pumps as new."""
     as_new = case.pumps if case.as_new is None else case.as_new
-    installed = tuple(replace(pump, head_loss=0.0) for pump in case.installed)
+    installed = tuple(replace(pump, head_loss=0.0, wear=None) for pump in case.installed)
     return replace(case, pumps=as_new, as_new=None, installed=installed)
 
 
 def _leaking(case: Case, as_new: Pumps) -> Case:
     """The head lost by the installed pumps, read as leakage inside them."""
-    loss = np.array([pump.head_loss for pump in case.installed])
-    flow = np.array([pump.rated_flow for pump in case.installed])
-    return replace(case, pumps=leaking(as_new, leak=leakage(as_new, loss=loss, flow=flow)), as_new=None)
+    return replace(case, pumps=leaking(as_new, leak=leaks(as_new, installed=case.installed)), as_new=None)
 
 
 def judged(bench: Bench, pumps: Pumps) -> Judged:
@@ -74,7 +76,7 @@ def judged(bench: Bench, pumps: Pumps) -> Judged:
         findings = worse(findings, judge(read, other.today, other.limits))
     verdict, worst = verdicts(findings)
     with np.errstate(invalid="ignore"):
-        shares = np.where(np.isfinite(run.flow), run.flow, np.nan) / run.ratings.bep_flow[:, None, :]
+        shares = np.where(np.isfinite(run.flow), run.flow, np.nan) / run.bounds.best
         margins = run.npsh_available / run.npsh_required
     duty = run.conditions.kind == Kind.DUTY
     candidates = Candidates(
@@ -88,8 +90,9 @@ def judged(bench: Bench, pumps: Pumps) -> Judged:
         findings=findings,
         figures=ranking.figures(
             run,
-            bench.today,
+            bench.without,
             count=bench.header.case.new_pump.count,
+            drives=[bench.header.case.new_pump.drive, *(p.drive for p in bench.header.case.installed)],
             weights=bench.header.case.weights,
         ),
     )

@@ -2,68 +2,148 @@
 
 from __future__ import annotations
 
-from dataclasses import fields, replace
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 
 from screener.header import match
-from screener.header.branch import BranchCurves, branch_curves, head_and_slope
-from screener.header.left import without_new
+from screener.header.branch import BranchCurves, head_and_slope
+from screener.header.branch import take as take_branches
+from screener.header.left import Left
 from screener.header.meet import Mark, Meeting, meet
+from screener.header.setting import Setting, branches_at, pumps_at, ratio_at
+from screener.header.usable import usable_speeds
 from screener.hydraulics import interpolate
 from screener.hydraulics.constants import GRAVITY, REFERENCE_DENSITY
 from screener.hydraulics.losses import loss_head
 from screener.hydraulics.motor import smallest_nameplate
+from screener.hydraulics.similarity import take as take_pumps
 from screener.hydraulics.suction import npsh_available
-from screener.model.arrays import STATIONS, Floats
-from screener.model.case import Branch
+from screener.model.arrays import STATIONS, Floats, Ints
+from screener.model.case import Branch, Case
 from screener.model.curves import Curves, Pumps
-from screener.model.run import Kind, Ratings, Run
-from screener.screening.header import Header
-from screener.screening.ratings import ratings, smallest_flow
+from screener.model.run import Bounds, Kind, Ratings, Run, Speed
+from screener.screening.header import Header, left_of
+from screener.screening.held import NewPumps, held
+from screener.screening.ratings import ratings, smallest_flow, summits, thermal_power
+from screener.screening.standing import Standing
 
 _LAST = STATIONS - 1
+
+
+@dataclass(frozen=True, slots=True)
+class Fitted:
+    """The new pumps at one setting: c rows, and their branch curves over what they deliver.
+
+    ratio : (c,) [-] speed over that at load;  bypass : [m3/s]
+    """
+
+    pumps: Pumps
+    branches: BranchCurves
+    ratio: Floats
+    bypass: float
+
+
+@dataclass(frozen=True, slots=True)
+class Group:
+    """States in which every pump has the same curves: c rows of new pumps, c rows or one of each installed.
+
+    columns : the states;  ratio, opening, summit, thermal_power : (c, 1 + p) or (1, 1 + p), see `Bounds`
+    """
+
+    columns: list[int]
+    pumps: tuple[Pumps, ...]
+    ratio: Floats
+    opening: Floats
+    summit: Floats
+    thermal_power: Floats
 
 
 def run(header: Header, pumps: Pumps, branch: Branch | None = None) -> Run:
     """Run c candidates through every state. branch : of the new pump, as in the case by default."""
     case = header.case
     place = branch or case.new_pump.branch
-    new = branch_curves(pumps.curves, [place])
+    known: dict[Setting, Fitted] = {}
+
+    def fitted(setting: Setting) -> Fitted:
+        if setting not in known:
+            known[setting] = _fitted(case, pumps, place, setting)
+        return known[setting]
+
     count, states, width = len(pumps), len(header.states), 1 + len(case.installed)
     flow, head = _unknown(count, states, width), _unknown(count, states)
-    for column, (state, left) in enumerate(zip(header.states, header.left, strict=True)):
-        if state.new:
-            met = meet(new, left, header.branches)
-            head[:, column] = met.header
-            _mark(flow[:, column], met)
+    speeds: dict[int, Floats] = {}
+    for column, (state, left, standing) in enumerate(
+        zip(header.states, header.left, header.standing, strict=True)
+    ):
+        if not state.new:
+            head[:, column], flow[:, column, 1:] = header.without[column].header, header.without[column].flow
+        elif state.speed == Speed.HELD:
+            holds = _hold(header, column, pumps, place, fitted, state.running)
+            head[:, column], flow[:, column], speeds[column] = holds
         else:
-            head[:, column], flow[:, column, 1:] = without_new(left, width - 1)
-    shut = match.shutoff_match(new, header.branches, pump_shutoff=header.ratings.shutoff)
-    result = _figures(header, pumps, place, flow, head)
-    own = ratings(pumps, new, _nameplate(header, pumps, result))
+            there = fitted(standing.setting)
+            head[:, column], flow[:, column] = _met(there, standing, left, np.arange(count))
+    base = fitted(header.base.setting)
+    groups = _groups(header, pumps, fitted, speeds)
+    shut = match.shutoff_match(base.branches, header.branches, pump_shutoff=header.ratings.shutoff)
+    result = figures(header, pumps, place, groups, flow, head, base)
+    opening, least = _own_speeds(header, pumps, place, fitted)
     return replace(
         result,
-        ratings=_beside(own, header.ratings),
-        start_header=_start_headers(header, new, states, width),
-        spare_head=_spare_heads(header, new, pumps, own),
+        start_header=_start_headers(header, pumps, place, fitted, states, width),
+        spare_head=_spare_heads(header, base, result.ratings),
         shutoff_match=np.where(header.beside, shut, np.nan),
-        load_share=_load_share(header, new, head),
+        load_share=_load_share(header, base.branches, head),
+        opening_speed=opening,
+        least_speed=least,
     )
 
 
-def today(header: Header) -> Run:
-    """The same states with the new pump standing still, as a run of one candidate that never runs."""
-    states, installed = len(header.states), len(header.case.installed)
-    flow, head = np.full((1, states, 1 + installed), np.nan), np.full((1, states), np.nan)
-    for column, left in enumerate(header.left):
-        head[0, column], flow[0, column, 1:] = without_new(left, installed)
+def today(header: Header, *, replaced: bool = True) -> Run:
+    """The same states with the new pump standing still, as a run of one candidate that never runs.
+
+    replaced : whether a pump that the new one replaces still runs
+    """
+    installed = len(header.case.installed)
+    alone = header.alone if replaced else header.without
+    flow = np.full((1, len(alone), 1 + installed), np.nan)
+    flow[0, :, 1:] = [state.flow for state in alone]
     nobody = _nobody(header.case.pumps)
-    result = _figures(header, nobody, header.case.new_pump.branch, flow, head)
+    ratio = np.array([[1.0, *state.ratio] for state in alone])
+    groups = [
+        Group(
+            [column],
+            (
+                nobody,
+                *(
+                    pumps_at(
+                        take_pumps(header.case.pumps, np.array([row])),
+                        ratio=ratio[column, 1 + row : 2 + row],
+                        viscosity=standing.setting.viscosity,
+                    )
+                    for row in range(installed)
+                ),
+            ),
+            ratio[column : column + 1],
+            np.append(np.nan, standing.branches.shutoff)[None],
+            np.append(np.nan, summits(standing.pumps))[None],
+            np.append(np.nan, standing.thermal_power)[None],
+        )
+        for column, standing in enumerate(header.standing)
+    ]
+    head = np.array([[state.header for state in alone]])
+    result = _figures(header, nobody, header.case.new_pump.branch, groups, flow, head)
     unknown = np.full((1, installed), np.nan)
     own = Ratings(**{f.name: np.full(1, np.nan) for f in fields(Ratings)})
+    gone = header.case.new_pump.replaces
+    runs = header.conditions.runs.copy()
+    if replaced and gone >= 0:
+        runs[:, 1 + gone] |= runs[:, 0]
     return replace(
         result,
+        conditions=replace(header.conditions, runs=runs),
         ratings=_beside(own, header.ratings),
         start_header=np.full_like(flow, np.nan),
         spare_head=np.full((1, 1 + installed), np.nan),
@@ -72,47 +152,183 @@ def today(header: Header) -> Run:
     )
 
 
+def fit(header: Header, pumps: Pumps, setting: Setting) -> Fitted:
+    """Bring c new pumps to a setting, in the place of the case."""
+    return _fitted(header.case, pumps, header.case.new_pump.branch, setting)
+
+
+def _fitted(case: Case, pumps: Pumps, place: Branch, setting: Setting) -> Fitted:
+    ratio = ratio_at(pumps, [case.new_pump.drive], setting.speed)
+    turned = pumps_at(pumps, ratio=ratio, viscosity=setting.viscosity)
+    bypass = setting.bypass[0] if setting.bypass else 0.0
+    return Fitted(turned, branches_at(turned, [place], np.array([bypass])), ratio, bypass)
+
+
 def _unknown(count: int, *shape: int) -> Floats:
     """NaN in the shape (count, *shape). The candidates lie side by side, as everything is done along them."""
     return np.full((*reversed(shape), count), np.nan).T
 
 
-def _mark(flow: Floats, met: Meeting) -> None:
-    """Fill in the flows (c, 1 + p) of one state, with the marks of `Run.flow`."""
-    flow[:, 0], flow[:, 1:] = met.flow, met.installed
+def _met(there: Fitted, standing: Standing, left: Left, rows: Ints) -> tuple[Floats, Floats]:
+    """Header head (r,) and flows through the pumps (r, 1 + p) of some candidates, with the marks of `Run`."""
+    branches = there.branches if len(rows) == len(there.branches) else take_branches(there.branches, rows)
+    met = meet(branches, left, standing.branches)
+    flow = np.concatenate([met.flow[:, None], met.installed], axis=1)
+    bypass = np.append(there.bypass, standing.bypass)
+    if bypass.any():
+        flow += bypass  # a pump held shut, or not running, is told apart by NaN alone
     flow[met.mark == Mark.NEW_PAST_END, 0] = np.inf
     flow[met.mark == Mark.NEW_NOT_MEASURED, 0] = -np.inf
     for mark, sign in ((Mark.INSTALLED_PAST_END, np.inf), (Mark.INSTALLED_NOT_MEASURED, -np.inf)):
-        rows = np.flatnonzero(met.mark == mark)
-        flow[rows, 1 + met.culprit[rows]] = sign
+        marked = np.flatnonzero(met.mark == mark)
+        flow[marked, 1 + met.culprit[marked]] = sign
+    return met.header, flow
 
 
-def _figures(header: Header, pumps: Pumps, place: Branch, flow: Floats, head: Floats) -> Run:
+def _hold(
+    header: Header,
+    column: int,
+    pumps: Pumps,
+    place: Branch,
+    fitted: Callable[[Setting], Fitted],
+    running: tuple[int, ...],
+    without: int = -1,
+) -> tuple[Floats, Floats, Floats]:
+    """Header head (c,), flows and speeds (c, 1 + p) of a state whose flow is held by speed.
+
+    without : row of an installed pump that stands still meanwhile, -1 for none
+    """
+    state, high = header.states[column], header.standing[column]
+    fast = fitted(high.setting)
+    new = NewPumps(pumps, place, fast.branches, fast.bypass)
+    now = held(header.case, state, high, header.alike, running=running, new=new)
+    head, flow, ratio = now.header.copy(), now.flow.copy(), now.ratio.copy()
+    slow, slow_left = header.slowest[column]
+    for rows, there, standing, left in (
+        (np.flatnonzero(now.short), fast, high, header.left[column]),
+        (np.flatnonzero(now.over), fitted(slow.setting), slow, slow_left),
+    ):
+        if rows.size:
+            if without >= 0:
+                left = left_of(header.case, state, standing, running)
+            head[rows], flow[rows] = _met(there, standing, left, rows)
+            ratio[rows, 0], ratio[rows, 1:] = there.ratio[rows], standing.ratio
+    return head, flow, ratio
+
+
+def _groups(
+    header: Header, pumps: Pumps, fitted: Callable[[Setting], Fitted], speeds: Mapping[int, Floats]
+) -> list[Group]:
+    """The states by what the pumps are like in them."""
+    case = header.case
+    found: dict[int, Group] = {}
+    result = []
+    for column, standing in enumerate(header.standing):
+        if column in speeds:
+            result.append(_by_speed(header, column, pumps, fitted, speeds[column]))
+        elif id(standing) in found:
+            found[id(standing)].columns.append(column)
+        else:
+            there = fitted(standing.setting)
+            rows = (take_pumps(standing.pumps, np.array([row])) for row in range(len(case.installed)))
+            group = Group(
+                [column],
+                (there.pumps, *rows),
+                _beside_one(there.ratio, standing.ratio),
+                _beside_one(there.branches.shutoff, standing.branches.shutoff),
+                _beside_one(summits(there.pumps), summits(standing.pumps)),
+                _beside_one(thermal_power(there.pumps), standing.thermal_power),
+            )
+            found[id(standing)] = group
+            result.append(group)
+    return result
+
+
+def _by_speed(
+    header: Header, column: int, pumps: Pumps, fitted: Callable[[Setting], Fitted], ratio: Floats
+) -> Group:
+    """One state whose flow is held by speed: each pump at the speed found, c rows where that varies."""
+    case, standing = header.case, header.standing[column]
+    fast = fitted(standing.setting)
+    viscosity = standing.setting.viscosity
+    parts = [pumps_at(pumps, ratio=ratio[:, 0], viscosity=viscosity)]
+    for row, pump in enumerate(case.installed):
+        one = take_pumps(case.pumps, np.array([row]))
+        turned = ratio[:, 1 + row] if pump.drive.varies else np.ones(1)
+        parts.append(pumps_at(one, ratio=turned, viscosity=viscosity))
+    power = _unknown(len(pumps), len(parts))
+    for place, part in enumerate(parts):
+        power[:, place] = thermal_power(part)
+    return Group(
+        [column],
+        tuple(parts),
+        ratio,
+        _beside_one(fast.branches.shutoff, standing.branches.shutoff),
+        _beside_one(summits(fast.pumps), summits(standing.pumps)),
+        power,
+    )
+
+
+def _beside_one(new: Floats, installed: Floats) -> Floats:
+    """A figure of c new and of p installed pumps, (c, 1 + p)."""
+    both = _unknown(len(new), 1 + len(installed))
+    both[:, 0], both[:, 1:] = new, installed
+    return both
+
+
+def figures(
+    header: Header,
+    pumps: Pumps,
+    place: Branch,
+    groups: list[Group],
+    flow: Floats,
+    head: Floats,
+    base: Fitted,
+) -> Run:
+    """What known flows mean for each pump. flow : (c, s, 1 + p); head : (c, s); base : the candidates at load.
+
+    Start headers, spare heads and how curves match are left to the caller.
+    """
+    result = _figures(header, pumps, place, groups, flow, head)
+    own = ratings(base.pumps, base.branches, _nameplate(header, groups, result))
+    return replace(result, ratings=_beside(own, header.ratings))
+
+
+def _figures(
+    header: Header, pumps: Pumps, place: Branch, groups: list[Group], flow: Floats, head: Floats
+) -> Run:
     """Head, power, efficiency and NPSH of every pump at its flow. flow : (c, s, 1 + p); head : (c, s)."""
     case, conditions = header.case, header.conditions
+    bypass = np.array([state.bypass or (0.0,) * flow.shape[2] for state in header.states])
     delivers = np.isfinite(flow) & (flow > 0)
     at = np.where(delivers, flow, 0.0)
+    given = np.where(delivers, np.maximum(flow - bypass, 0.0), 0.0) if bypass.any() else at
     new_count = np.array([state.new for state in header.states])
-    total = at[:, :, 0] * new_count + at[:, :, 1:].sum(axis=2)
+    total = given[:, :, 0] * new_count + given[:, :, 1:].sum(axis=2)
     total = np.where(np.isnan(head), np.nan, total)
     branches = (place, *(pump.branch for pump in case.installed))
     suction_loss, discharge_loss = np.empty_like(at), np.empty_like(at)
     for column, branch in enumerate(branches):
         suction_loss[:, :, column] = loss_head(branch.suction, flow=at[:, :, column])
-        discharge_loss[:, :, column] = loss_head(branch.discharge, flow=at[:, :, column])
+        discharge_loss[:, :, column] = loss_head(branch.discharge, flow=given[:, :, column])
     lift = np.array([b.suction_head for b in branches])
     pump_head = head[:, :, None] - lift + suction_loss + discharge_loss
-    everyone = (pumps.curves, case.pumps.curves)
-    efficiency = _read(everyone, "efficiency", "span", at)
-    power = _read(everyone, "power", "span", at)
-    npsh_required = _read(everyone, "npsh_required", "npsh_span", at)
+    if bypass.any():  # behind a shut check valve a pump stands where its bypass puts it
+        behind = (at > 0) & (given <= 0)
+        pump_head = np.where(behind, _read(groups, "head", "span", at), pump_head)
+    efficiency = _read(groups, "efficiency", "span", at)
+    power = _read(groups, "power", "span", at)
+    npsh_required = _read(groups, "npsh_required", "npsh_span", at)
     useful = REFERENCE_DENSITY * GRAVITY * at * pump_head
     with np.errstate(divide="ignore", invalid="ignore"):
         power = np.where(np.isnan(power) & (efficiency > 0) & delivers, useful / efficiency, power)
         efficiency = np.where(np.isnan(efficiency), useful / power, efficiency)
     power = power * (conditions.density / REFERENCE_DENSITY)[:, None]
-    common = loss_head(case.suction_friction, flow=np.nan_to_num(total))
-    liquids = [case.liquids[case.duties[state.duty].liquid] for state in header.states]
+    drawn = np.nan_to_num(total)  # what a bypass takes back comes through the common line again
+    if bypass.any():
+        drawn = drawn + (at - given)[:, :, 0] * new_count + (at - given)[:, :, 1:].sum(axis=2)
+    common = loss_head(case.suction_friction, flow=drawn)
+    liquids = [case.liquids[state.liquid] for state in header.states]
     levels = [case.levels[state.level] for state in header.states]
     available = npsh_available(
         surface_pressure=case.atmospheric_pressure + np.array([lv.vessel_pressure for lv in levels])[:, None],
@@ -125,6 +341,7 @@ def _figures(header: Header, pumps: Pumps, place: Branch, flow: Floats, head: Fl
     return Run(
         pumps=pumps,
         ratings=header.ratings,
+        bounds=_bounds(groups, flow.shape),
         conditions=conditions,
         header=head,
         total=total,
@@ -138,22 +355,56 @@ def _figures(header: Header, pumps: Pumps, place: Branch, flow: Floats, head: Fl
         spare_head=head,
         shutoff_match=head,
         load_share=head,
+        opening_speed=np.full_like(head, np.nan),
+        least_speed=np.full_like(head, np.nan),
     )
 
 
-def _read(curves: tuple[Curves, Curves], column: str, axis: str, flow: Floats) -> Floats:
+def _bounds(groups: list[Group], shape: tuple[int, ...]) -> Bounds:
+    """What bounds each pump in each state; one state for all where they are alike."""
+    count, states, width = shape
+    whole = len(groups) == 1
+
+    def filled(of: Callable[[Group, int], Floats]) -> Floats:
+        result = _unknown(count, 1 if whole else states, width)
+        for group in groups:
+            for pump in range(width):
+                result[:, [0] if whole else group.columns, pump] = np.reshape(of(group, pump), (-1, 1))
+        return result
+
+    return Bounds(
+        speed=filled(lambda group, pump: group.ratio[:, pump]),
+        start=filled(lambda group, pump: group.pumps[pump].curves.start),
+        end=filled(lambda group, pump: group.pumps[pump].curves.end),
+        best=filled(lambda group, pump: group.pumps[pump].bep_flow),
+        minimum=filled(lambda group, pump: group.pumps[pump].minimum_flow),
+        largest=filled(lambda group, pump: group.pumps[pump].maximum_flow),
+        summit=filled(lambda group, pump: group.summit[:, pump]),
+        opening=filled(lambda group, pump: group.opening[:, pump]),
+        thermal_power=filled(lambda group, pump: group.thermal_power[:, pump]),
+    )
+
+
+def _read(groups: list[Group], column: str, axis: str, flow: Floats) -> Floats:
     """One column of the new and of the installed pumps' curves at flows (c, s, 1 + p)."""
     result = np.full_like(flow, np.nan)
-    new, installed = curves
-    for place in range(flow.shape[2]):
-        pumps, part = (installed, slice(place - 1, place)) if place else (new, slice(None))
-        values, reach = getattr(pumps, column)[part], getattr(pumps, axis)[part]
-        at, read = flow[:, :, place].T, result[:, :, place].T
-        known = np.flatnonzero(~np.isnan(values).all(axis=1))
-        if 0 < known.size < len(values) / 2:
-            read[:, known] = _stations(values[known], reach[known], at[:, known])
-        elif known.size:
-            read[:] = _stations(values, reach, at)
+    for group in groups:
+        every = len(group.columns) == flow.shape[1]
+        for place, pumps in enumerate(group.pumps):
+            values, reach = getattr(pumps.curves, column), getattr(pumps.curves, axis)
+            known = np.flatnonzero(~np.isnan(values).all(axis=1))
+            if not known.size:
+                continue
+            at = flow[:, :, place].T
+            read = result[:, :, place].T
+            if not every:
+                at, read = at[group.columns], np.full((len(group.columns), len(flow)), np.nan)
+            if known.size < len(values) / 2:
+                read[:, known] = _stations(values[known], reach[known], at[:, known])
+            else:
+                read[:] = _stations(values, reach, at)
+            if not every:
+                result[:, group.columns, place] = read.T
     return result
 
 
@@ -165,15 +416,18 @@ def _stations(values: Floats, reach: Floats, flow: Floats) -> Floats:
     return np.where(station <= _LAST * (1 + 1e-12), read, np.nan)
 
 
-def _nameplate(header: Header, pumps: Pumps, figures: Run) -> Floats:
+def _nameplate(header: Header, groups: list[Group], figures: Run) -> Floats:
     """Smallest standard motor for each candidate, (c,) [W]: +inf where none is large enough.
 
     NaN where the shaft power is not known in every state; a pump held shut counts where it was measured.
     """
     runs = header.conditions.runs[:, 0]
     power = np.where(figures.flow[:, :, 0] == 0, 0.0, figures.power[:, :, 0])
-    density = header.conditions.density.max() / REFERENCE_DENSITY
-    largest = np.fmax(power[:, runs].max(axis=1), pumps.curves.power[:, 0] * density)
+    density = header.conditions.density / REFERENCE_DENSITY
+    largest = power[:, runs].max(axis=1)
+    for group in groups:
+        shut = group.pumps[0].curves.power[:, 0] * density[group.columns].max()
+        largest = np.fmax(largest, shut) if runs[group.columns].any() else largest
     largest = np.where(np.isnan(power[:, runs]).any(axis=1), np.nan, largest)
     return smallest_nameplate(
         rated_power=power[:, header.rated], largest_power=largest, series=header.case.new_pump.motor_series
@@ -182,14 +436,9 @@ def _nameplate(header: Header, pumps: Pumps, figures: Run) -> Floats:
 
 def _beside(new: Ratings, installed: Ratings) -> Ratings:
     """Join ratings (c,) and (p,) to (c, 1 + p)."""
-    count = len(new.end)
-
-    def join(name: str) -> Floats:
-        both = _unknown(count, 1 + len(installed.end))
-        both[:, 0], both[:, 1:] = getattr(new, name), getattr(installed, name)
-        return both
-
-    return Ratings(**{f.name: join(f.name) for f in fields(Ratings)})
+    return Ratings(
+        **{f.name: _beside_one(getattr(new, f.name), getattr(installed, f.name)) for f in fields(Ratings)}
+    )
 
 
 def _at_most(met: Meeting, new: BranchCurves, installed: BranchCurves) -> Floats:
@@ -198,34 +447,49 @@ def _at_most(met: Meeting, new: BranchCurves, installed: BranchCurves) -> Floats
     return np.where(met.mark == Mark.INSTALLED_PAST_END, installed.end_head[met.culprit], head)
 
 
-def _start_headers(header: Header, new: BranchCurves, states: int, width: int) -> Floats:
+def _start_headers(
+    header: Header, pumps: Pumps, place: Branch, fitted: Callable[[Setting], Fitted], states: int, width: int
+) -> Floats:
     """Header head that the others hold while one pump starts, (c, s, 1 + p); duties only."""
-    result = _unknown(len(new), states, width)
+    result = _unknown(len(pumps), states, width)
     for column, (state, left) in enumerate(zip(header.states, header.left, strict=True)):
         if state.new and state.kind == Kind.DUTY and (left.settled or left.floor >= 0):
-            head = without_new(left, width - 1)[0]
+            head = header.without[column].header
             result[:, column, 0] = left.header[0] if np.isnan(head) else head
     for (column, row), left in header.starting.items():
         if header.states[column].new:
-            others = _at_most(meet(new, left, header.branches), new, header.branches)
-            for other in header.states[column].running:
-                if header.alike[other] == header.alike[row]:
-                    result[:, column, 1 + other] = others
+            standing = header.standing[column]
+            new = fitted(standing.setting).branches
+            others = _at_most(meet(new, left, standing.branches), new, standing.branches)
+            _of_kind(header, column, row, others, result)
+    for column in header.slowest:
+        state = header.states[column]
+        for first in dict.fromkeys(int(header.alike[row]) for row in state.running if state.new):
+            row = next(row for row in state.running if header.alike[row] == first)
+            rest = tuple(other for other in state.running if other != row)
+            others = _hold(header, column, pumps, place, fitted, rest, without=row)[0]
+            _of_kind(header, column, row, others, result)
     return result
 
 
-def _spare_heads(header: Header, new: BranchCurves, pumps: Pumps, own: Ratings) -> Floats:
-    """Head that each pump may lose at the lowest common duty, (c, 1 + p) [m]."""
-    installed = header.branches
+def _of_kind(header: Header, column: int, row: int, others: Floats, result: Floats) -> None:
+    """Note a figure for every running pump of the same kind as an installed one."""
+    for other in header.states[column].running:
+        if header.alike[other] == header.alike[row]:
+            result[:, column, 1 + other] = others
+
+
+def _spare_heads(header: Header, base: Fitted, own: Ratings) -> Floats:
+    """Head that each pump may lose at the lowest common duty, (c, 1 + p) [m]; NaN where that is unusual."""
+    installed, new = header.branches, base.branches
+    result = _unknown(len(new), 1 + len(installed))
+    if not header.at_minimum and not header.conditions.usual[header.lowest]:
+        return result
     allowed = smallest_flow(
-        pumps,
-        heat_capacity=header.heat_capacity,
-        temperature_rise=header.temperature_rise,
-        power=own.thermal_power,
+        base.pumps, heat_capacity=header.heat_capacity, temperature_rise=header.temperature_rise
     )
     smallest = np.clip(allowed, new.low, new.end)
     rest = np.interp(smallest, header.finely.left, header.finely.header, left=np.nan, right=np.nan)
-    result = _unknown(len(new), 1 + len(installed))
     result[:, 0] = head_and_slope(new, np.arange(len(new)), smallest)[0] - rest
     for row, left in header.at_minimum.items():
         first = int(header.alike[row])
@@ -238,6 +502,22 @@ def _spare_heads(header: Header, new: BranchCurves, pumps: Pumps, own: Ratings) 
     return result
 
 
+def _own_speeds(
+    header: Header, pumps: Pumps, place: Branch, fitted: Callable[[Setting], Fitted]
+) -> tuple[Floats, Floats]:
+    """Speeds at which the new pump opens its valve and reaches its minimum flow, with the system open."""
+    opening, least = (_unknown(len(pumps), len(header.states)) for _ in range(2))
+    varies = header.case.new_pump.drive.varies
+    for column, left in header.open_.items() if varies else ():
+        setting = replace(header.standing[column].setting, speed=Speed.AT_LOAD)
+        there = fitted(setting)
+        smallest = smallest_flow(
+            there.pumps, heat_capacity=header.heat_capacity, temperature_rise=header.temperature_rise
+        )
+        opening[:, column], least[:, column] = usable_speeds(there.pumps, place, left, minimum=smallest)
+    return opening, least
+
+
 def _load_share(header: Header, new: BranchCurves, head: Floats) -> Floats:
     """Load-share difference over the duties that the new and an installed pump run together, (c, p)."""
     together: dict[tuple[int, ...], list[int]] = {}
@@ -245,11 +525,17 @@ def _load_share(header: Header, new: BranchCurves, head: Floats) -> Floats:
         places = (
             place
             for place, state in enumerate(header.states)
-            if state.kind == Kind.DUTY and state.new and kind in header.alike[list(state.running)]
+            if header.conditions.usual[place]
+            and state.kind == Kind.DUTY
+            and state.new
+            and kind in header.alike[list(state.running)]
         )
         together.setdefault(tuple(places), []).append(int(kind))
     result = _unknown(len(new), len(header.alike))
-    for common, kinds in together.items():
+    rated = header.conditions.usual[header.rated]
+    for common, kinds in together.items() if rated else ():
+        if not common:
+            continue
         share = match.load_share(
             new,
             header.branches,

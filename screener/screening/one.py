@@ -15,7 +15,7 @@ from screener.model.finding import Candidates, Judged, Verdict
 from screener.screening.as_set import AsSet, valves_as_set
 from screener.screening.assess import Bench, judged, set_up, take
 from screener.screening.reach import Reach, reach, smallest_diameters
-from screener.screening.shortlist import best_of, requirements
+from screener.screening.shortlist import asked, best_of, requirements
 from screener.screening.today import combined_band
 
 
@@ -113,7 +113,7 @@ def trim_steps(catalog: PumpTable, model: int, step: float) -> Floats:
 
 
 def _reach(bench: Bench, catalog: PumpTable) -> Reach:
-    return reach(catalog, list(requirements(bench).values()), bench.header.case.new_pump)
+    return reach(catalog, asked(bench, requirements(bench)), bench.header.case.new_pump)
 
 
 def _at(bench: Bench, catalog: PumpTable, found: Reach, model: int, diameters: Floats) -> Judged:

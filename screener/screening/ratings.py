@@ -51,12 +51,9 @@ def ratings(pumps: Pumps, branches: BranchCurves, motor: Floats) -> Ratings:
         droop=rise / shutoff,
         header_shutoff=branches.shutoff,
         header_summit=branches.low_head,
-        start=curves.start,
-        end=curves.end,
         bep_flow=pumps.bep_flow,
         minimum_flow=pumps.minimum_flow,
         maximum_flow=pumps.maximum_flow,
-        thermal_power=thermal_power(pumps),
         region_low=pumps.region_low,
         region_high=pumps.region_high,
         specific_speed=pumps.specific_speed,
@@ -66,6 +63,11 @@ def ratings(pumps: Pumps, branches: BranchCurves, motor: Floats) -> Ratings:
         motor=motor,
         head_tolerance=pumps.head_tolerance,
     )
+
+
+def summits(pumps: Pumps) -> Floats:
+    """Largest head of each curve, (c,) [m]; NaN where shutoff was not measured."""
+    return np.where(pumps.curves.start == 0, _summit_and_rise(pumps)[0], np.nan)
 
 
 def _summit_and_rise(pumps: Pumps) -> tuple[Floats, Floats]:

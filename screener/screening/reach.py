@@ -8,8 +8,8 @@ from enum import IntEnum
 
 import numpy as np
 
-from screener.header.requirement import Requirement
-from screener.hydraulics.similarity import end_at, head_at
+from screener.hydraulics.similarity import end_at, head_at, trimmed
+from screener.hydraulics.viscosity import Cover, factors, needed
 from screener.model.arrays import Bools, Codes, Floats, Ints
 from screener.model.case import NewPump
 from screener.model.curves import PumpTable
@@ -26,6 +26,21 @@ class Reason(IntEnum):
     CURVE_TOO_SHORT = 2
     TOO_LARGE = 3
     WRONG_SPEED = 4
+    TOO_VISCOUS = 5
+
+
+@dataclass(frozen=True, slots=True)
+class Need:
+    """What one duty asks of the new pump.
+
+    flow : [m3/s];  head : [m];  viscosity : [m2/s] that curves are corrected for, 0 for none
+    held : the pump may vary its speed in it
+    """
+
+    flow: float
+    head: float
+    viscosity: float = 0.0
+    held: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,44 +66,86 @@ class Reach:
     end: Floats
 
 
-def reach(table: PumpTable, needs: Sequence[Requirement], place: NewPump) -> Reach:
+def reach(table: PumpTable, needs: Sequence[Need], place: NewPump) -> Reach:
     """Look at every model at its largest diameter, and find the smallest that meets all duties.
 
     Where the flow asked lies left of a curve's first measured point nothing is said against the model: the
-    states will tell.
+    states will tell. Viscosity is looked at last, for those that would do with water.
     """
     count = len(table)
     model = np.arange(count)
     ratio, runs = speed_ratios(table, place)
     most = table.maximum.astype(np.float64)
     least = smallest_diameters(table)
-    duties = [(need.flow, need.head) for need in needs if np.isfinite(need.flow) and need.flow > 0]
+    duties = [need for need in needs if np.isfinite(need.flow) and need.flow > 0]
     reason = np.where(runs, Reason.REACHES, Reason.WRONG_SPEED).astype(np.int8)
-    head, needed, flow = np.full(count, np.nan), np.full(count, np.nan), np.full(count, np.nan)
+    head, needed_head, flow = np.full(count, np.nan), np.full(count, np.nan), np.full(count, np.nan)
     shortest = np.full(count, np.inf)
     end = end_at(table, model=model, diameter=most, speed_ratio=ratio)
     spare = np.full(count, np.inf if duties else 0.0)
-    for duty_flow, duty_head in duties:
-        given = head_at(table, model=model, diameter=most, speed_ratio=ratio, flow=np.full(count, duty_flow))
-        ratio_given = given / duty_head
+    for need in duties:
+        slow, fast = _speeds(table, place, ratio, held=need.held)
+        at = np.full(count, need.flow)
+        given = head_at(table, model=model, diameter=most, speed_ratio=fast, flow=at)
+        ratio_given = given / need.head
         worse = ~(ratio_given >= shortest)
-        head, needed = np.where(worse, given, head), np.where(worse, duty_head, needed)
-        flow, shortest = np.where(worse, duty_flow, flow), np.where(worse, ratio_given, shortest)
+        head, needed_head = np.where(worse, given, head), np.where(worse, need.head, needed_head)
+        flow, shortest = np.where(worse, need.flow, flow), np.where(worse, ratio_given, shortest)
         code = np.where(
-            duty_flow > end,
+            need.flow > end * fast / ratio,
             Reason.CURVE_TOO_SHORT,
-            np.where(given < duty_head * (1 - 1e-9), Reason.HEAD_TOO_LOW, Reason.REACHES),
+            np.where(given < need.head * (1 - 1e-9), Reason.HEAD_TOO_LOW, Reason.REACHES),
         )
         reason = np.where(reason == Reason.REACHES, code, reason)
-        least_given = head_at(
-            table, model=model, diameter=least, speed_ratio=ratio, flow=np.full(count, duty_flow)
-        )
-        spare = np.fmin(spare, least_given / duty_head)
+        least_given = head_at(table, model=model, diameter=least, speed_ratio=slow, flow=at)
+        spare = np.minimum(spare, np.nan_to_num(least_given) / need.head)
     reason = np.where((reason == Reason.REACHES) & (spare > TOO_LARGE), Reason.TOO_LARGE, reason)
+    rows = np.flatnonzero(reason == Reason.REACHES)
+    asked = []
+    for need in duties:
+        fast = _speeds(table, place, ratio, held=need.held)[1][rows]
+        at_flow, at_head, code = _with_water(table, rows, most[rows], fast, need)
+        reason[rows] = np.where(reason[rows] == Reason.REACHES, code, reason[rows])
+        asked.append((at_flow, at_head, fast))
     wanted = np.full(count, np.nan)
-    rows = np.flatnonzero((reason == Reason.REACHES) & ~np.isnan(most))
-    wanted[rows] = _smallest(table, rows, least[rows], most[rows], ratio[rows], duties)
-    return Reach(reason.astype(np.int8), wanted, most, ratio, head, needed, flow, end)
+    able = (reason[rows] == Reason.REACHES) & ~np.isnan(most[rows])
+    rows = rows[able]
+    wanted[rows] = _smallest(
+        table, rows, least[rows], most[rows], [tuple(part[able] for part in parts) for parts in asked]
+    )
+    return Reach(reason.astype(np.int8), wanted, most, ratio, head, needed_head, flow, end)
+
+
+def _speeds(table: PumpTable, place: NewPump, ratio: Floats, *, held: bool) -> tuple[Floats, Floats]:
+    """Lowest and highest speed over that of the curves, (n,) each."""
+    drive = place.drive
+    if not held or not drive.varies:
+        return ratio, ratio
+    low = np.fmax(drive.lowest * ratio, table.lowest_speed / table.speed)
+    high = np.fmin(drive.highest * ratio, table.highest_speed / table.speed)
+    return np.minimum(low, ratio), np.maximum(high, ratio)
+
+
+def _with_water(
+    table: PumpTable, rows: Ints, diameter: Floats, speed_ratio: Floats, need: Need
+) -> tuple[Floats, Floats, Codes]:
+    """Flow [m3/s] and head [m] that some models must give with water, and whether they do; (r,) each."""
+    code = np.full(len(rows), Reason.REACHES, np.int8)
+    flow, head = np.full(len(rows), need.flow), np.full(len(rows), need.head)
+    if not need.viscosity or not rows.size:
+        return flow, head, code
+    factor = factors(
+        trimmed(table, model=rows, diameter=diameter, speed_ratio=speed_ratio), viscosity=need.viscosity
+    )
+    best = table.bep_flow[table.first[rows + 1] - 1] * speed_ratio
+    flow, head = needed(flow=flow, head=head, factors=factor, bep_flow=best)
+    end = end_at(table, model=rows, diameter=diameter, speed_ratio=speed_ratio)
+    at = np.nan_to_num(flow)
+    given = head_at(table, model=rows, diameter=diameter, speed_ratio=speed_ratio, flow=at)
+    code[given < head] = Reason.HEAD_TOO_LOW
+    code[flow > end] = Reason.CURVE_TOO_SHORT
+    code[factor.cover != Cover.COVERED] = Reason.TOO_VISCOUS
+    return flow, head, code
 
 
 def smallest_diameters(table: PumpTable) -> Floats:
@@ -115,22 +172,18 @@ def speed_ratios(table: PumpTable, place: NewPump) -> tuple[Floats, Bools]:
 
 
 def _smallest(
-    table: PumpTable,
-    model: Ints,
-    least: Floats,
-    most: Floats,
-    ratio: Floats,
-    duties: Sequence[tuple[float, float]],
+    table: PumpTable, model: Ints, least: Floats, most: Floats, duties: Sequence[tuple[Floats, ...]]
 ) -> Floats:
-    """Bisect the diameter between `least` and `most`; all duties are met at `most`."""
+    """Bisect the diameter between `least` and `most`; all duties are met at `most`.
+
+    duties : flow, head and speed ratio of each, (r,)
+    """
     low, high = least.copy(), most.copy()
     for _ in range(30):
         middle = (low + high) / 2
         meets = np.ones(len(model), bool)
-        for flow, head in duties:
-            given = head_at(
-                table, model=model, diameter=middle, speed_ratio=ratio, flow=np.full(len(model), flow)
-            )
+        for flow, head, ratio in duties:
+            given = head_at(table, model=model, diameter=middle, speed_ratio=ratio, flow=flow)
             meets &= ~(given < head)
         low, high = np.where(meets, low, middle), np.where(meets, middle, high)
     return high

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -14,11 +14,11 @@ from screener.model.arrays import Bools, Floats, Ints
 from screener.model.case import Case
 from screener.model.curves import PumpTable
 from screener.model.finding import Candidates, Findings, Verdict
-from screener.model.run import Kind
+from screener.model.run import Kind, Speed
 from screener.screening.assess import Bench, assess, join, judged, restored, set_up, take
 from screener.screening.judge import inherited
 from screener.screening.ratings import efficiency_at
-from screener.screening.reach import Reach, Reason, reach
+from screener.screening.reach import Need, Reach, Reason, reach
 
 LADDER = 12
 """Diameters of each model looked at first, from the smallest that meets the duties to the largest."""
@@ -68,7 +68,7 @@ def shortlist(case: Case, catalog: PumpTable, *, progress: Progress | None = Non
     """
     bench = set_up(case)
     needs = requirements(bench)
-    found = reach(catalog, list(needs.values()), case.new_pump)
+    found = reach(catalog, asked(bench, needs), case.new_pump)
     rows, diameters = _ladder(catalog, found, case.new_pump.trim_step)
     first = _assess(bench, catalog, found, rows, diameters, progress)
     rows, diameters = _between(first, case.new_pump.trim_step)
@@ -99,7 +99,7 @@ def requirements(bench: Bench) -> dict[int, Requirement]:
     header = bench.header
     return {
         place: requirement(
-            header.branches,
+            header.standing[place].branches,
             running=state.running,
             curve=header.left[place].curve,
             asked=state.asked,
@@ -109,6 +109,20 @@ def requirements(bench: Bench) -> dict[int, Requirement]:
         for place, state in enumerate(header.states)
         if state.kind == Kind.DUTY and state.new
     }
+
+
+def asked(bench: Bench, needs: Mapping[int, Requirement]) -> list[Need]:
+    """What the duties ask of a model, for the first look at a catalog."""
+    header = bench.header
+    return [
+        Need(
+            flow=need.flow,
+            head=need.head,
+            viscosity=header.standing[place].setting.viscosity,
+            held=header.states[place].speed == Speed.HELD,
+        )
+        for place, need in needs.items()
+    ]
 
 
 def best_of(candidates: Candidates) -> int:

@@ -7,10 +7,10 @@ from dataclasses import fields
 
 import numpy as np
 
-from screener.header.system import system_curve
+from screener.header.system import SystemCurve, system_curve
 from screener.model.arrays import Ints
 from screener.model.case import Case, Control, Duty
-from screener.model.run import Kind, State
+from screener.model.run import Kind, Speed, State
 
 
 def states(case: Case) -> tuple[State, ...]:
@@ -35,7 +35,7 @@ def states(case: Case) -> tuple[State, ...]:
             for level in _upset_levels(case, duty) if new else ():
                 for state in _upsets(case, number, level, running, count, alike):
                     rest = tuple(sorted(int(alike[row]) for row in state.running))
-                    same = (state.kind, level, duty.liquid, rest, state.new)
+                    same = (state.kind, level, duty.liquid, rest, state.new, state.speed, state.bypass)
                     upsets.setdefault(same, state)
     return tuple(sorted([*duties, *upsets.values()], key=lambda state: (state.duty, state.kind)))
 
@@ -44,6 +44,11 @@ def classes(case: Case) -> Ints:
     """For each installed pump, the first one that is identical to it in every figure; (p,) int."""
     signatures = [_signature(case, row) for row in range(len(case.installed))]
     return np.array([signatures.index(signature) for signature in signatures], np.int64)
+
+
+def curve_of(case: Case, state: State) -> SystemCurve:
+    """The system curve of a state."""
+    return system_curve(case.system, case.levels[state.level], case.liquids[state.liquid])
 
 
 def rated_state(case: Case, found: Sequence[State]) -> int:
@@ -62,7 +67,7 @@ def _upsets(
     """The combination wide open, and with each running pump lost in turn."""
     duty = case.duties[number]
     result = []
-    if duty.control == Control.THROTTLED or level not in duty.levels:
+    if duty.control != Control.OPEN or level not in duty.levels:
         result.append(_state(case, number, level, Kind.WIDE_OPEN, running, count, None, 0.0))
     for lost in dict.fromkeys(int(alike[row]) for row in running):
         lost_row = next(row for row in running if alike[row] == lost)
@@ -85,6 +90,8 @@ def _state(
 ) -> State:
     duty = case.duties[number]
     curve = system_curve(case.system, case.levels[level], case.liquids[duty.liquid])
+    held = duty.control == Control.SPEED
+    speed = Speed.AT_LOAD if not held else Speed.HELD if kind == Kind.DUTY else Speed.HIGHEST
     return State(
         duty=number,
         level=level,
@@ -93,9 +100,12 @@ def _state(
         new=new,
         lost=lost,
         asked=duty.flow,
-        throttled=kind == Kind.DUTY and duty.control == Control.THROTTLED,
+        throttled=kind == Kind.DUTY and duty.control != Control.OPEN,
         static=curve.static,
         share=share,
+        liquid=duty.liquid,
+        speed=speed,
+        bypass=duty.bypass,
     )
 
 
@@ -123,4 +133,6 @@ def _signature(case: Case, row: int) -> tuple[object, ...]:
     columns = [getattr(pumps, f.name)[row] for f in fields(pumps) if f.name not in ("curves", "model")]
     curves = [getattr(pumps.curves, f.name)[row].tobytes() for f in fields(pumps.curves)]
     figures = np.array([*columns, installed.rated_flow, installed.motor]).tobytes()
-    return (installed.branch, figures, *curves)
+    bypass = tuple(duty.bypass[1 + row] if duty.bypass else 0.0 for duty in case.duties)
+    leak = installed.wear.leak if installed.wear else 0.0
+    return (installed.branch, installed.drive, figures, bypass, leak, *curves)

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from dataclasses import dataclass
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -11,18 +11,22 @@ from screener.header import branch
 from screener.header.branch import branch_curves, take
 from screener.header.left import flow_left, without_new
 from screener.header.requirement import Requirement
+from screener.header.setting import speed_limits
 from screener.header.system import system_curve
 from screener.header.turndown import Band, band
+from screener.header.usable import usable_speeds
 from screener.hydraulics.similarity import take as take_pumps
 from screener.model.arrays import Floats
 from screener.model.case import Case
 from screener.model.curves import Pumps
 from screener.model.finding import Findings
+from screener.model.run import Speed
 from screener.screening.assess import Bench, set_up
-from screener.screening.header import Header
+from screener.screening.header import Header, left_of
 from screener.screening.judge import inherited
 from screener.screening.ratings import smallest_flow
 from screener.screening.shortlist import requirements
+from screener.screening.standing import stand
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,6 +57,26 @@ class Permitted:
 
 
 @dataclass(frozen=True, slots=True)
+class Usable:
+    """Speeds of one installed pump that varies its speed, in a state whose flow is held by speed.
+
+    state, pump : rows;  speed : [rpm] at load;  lowest, highest : [-] of its range, over that
+    opening, least : [-] at which its check valve opens and it reaches its minimum flow, the system open and
+                     the other installed pumps at load; NaN where not known
+    now : [-] at which it holds the flow without the new pump
+    """
+
+    state: int
+    pump: int
+    speed: float
+    lowest: float
+    highest: float
+    opening: float
+    least: float
+    now: float
+
+
+@dataclass(frozen=True, slots=True)
 class HeaderReport:
     """The header today. needs, naive : by state, for every duty with a new pump."""
 
@@ -62,6 +86,7 @@ class HeaderReport:
     permitted: tuple[Permitted, ...]
     inherited: Findings
     highest_header: float
+    usable: tuple[Usable, ...]
 
 
 def header_report(case: Case) -> HeaderReport:
@@ -79,7 +104,40 @@ def header_report(case: Case) -> HeaderReport:
         permitted=tuple(permitted(bench.header, running) for running in _combinations(bench.header)),
         inherited=inherited(bench.today, bench.limits),
         highest_header=float(np.nanmax(heads)) if np.isfinite(heads).any() else np.nan,
+        usable=tuple(usable(bench.header)),
     )
+
+
+def usable(header: Header) -> Iterator[Usable]:
+    """The speeds of every installed pump that holds a flow by its speed, identical ones once."""
+    case = header.case
+    for place in header.open_:
+        state = header.states[place]
+        setting = replace(header.standing[place].setting, speed=Speed.AT_LOAD)
+        there = stand(
+            case, setting, heat_capacity=header.heat_capacity, temperature_rise=header.temperature_rise
+        )
+        for first in dict.fromkeys(int(header.alike[row]) for row in state.running):
+            pump = case.installed[first]
+            if not pump.drive.varies:
+                continue
+            row = next(row for row in state.running if header.alike[row] == first)
+            rest = [other for other in state.running if other != row]
+            beside = left_of(case, state, there, rest, cells=400, throttled=False, count=1)
+            one = take_pumps(there.pumps, np.array([row]))
+            opening, least = usable_speeds(one, pump.branch, beside, minimum=there.minimum[row : row + 1])
+            low, high = speed_limits(one, [pump.drive])
+            now = float(header.alone[place].ratio[row])
+            yield Usable(
+                place,
+                row,
+                float(one.speed[0]),
+                float(low[0]),
+                float(high[0]),
+                float(opening[0]),
+                float(least[0]),
+                now if np.isfinite(header.alone[place].header) else np.nan,
+            )
 
 
 def _combinations(header: Header) -> list[tuple[int, ...]]:

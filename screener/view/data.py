@@ -10,8 +10,9 @@ import numpy as np
 
 from screener import ranking, units
 from screener.criteria import criteria
+from screener.model.case import Case, WearFit
 from screener.model.finding import Candidates, Outcome, Verdict
-from screener.model.run import Kind, Run
+from screener.model.run import Kind, Run, in_state
 from screener.screening.assess import Bench
 from screener.screening.reach import Reason
 from screener.screening.shortlist import Shortlist
@@ -52,6 +53,24 @@ REASONS = {
     Reason.CURVE_TOO_SHORT: "flow past the end of the curve",
     Reason.TOO_LARGE: "too large at the smallest impeller",
     Reason.WRONG_SPEED: "speed that this supply does not give",
+    Reason.TOO_VISCOUS: "outside the viscosity method",
+}
+
+WEAR_READINGS = {
+    WearFit.Reading.NEITHER: "neither",
+    WearFit.Reading.LOSS: "lower curve",
+    WearFit.Reading.LEAK: "leakage",
+}
+
+WEAR_CAUTIONS = {
+    WearFit.Caution.FEW_POINTS: "fewer than three points: an error in one of them goes unseen",
+    WearFit.Caution.SHUTOFF_INFERRED: "shutoff was not measured: the head there, which decides whether the "
+    "pump is held shut, is inferred",
+    WearFit.Caution.NARROW: "the points span less than 20 % of the curve: they hardly tell a lower curve "
+    "from leakage",
+    WearFit.Caution.ABOVE_NEW: "a point lies above the curve as new by more than the error of reading",
+    WearFit.Caution.CURVE_ENDS: "the curve ends before leakage could explain the points: it is taken as "
+    "large as the curve allows",
 }
 
 CAUTIONS = (
@@ -199,6 +218,39 @@ class Limited:
         return tidy(value * 100 if name == "%" else value)
 
 
+def installed(case: Case, display: Display) -> list[dict[str, Any]]:
+    """The installed pumps, each with the head that it lost and how that was found."""
+    return [
+        {
+            "pump": pump.tag,
+            "title": pump.title,
+            "head_loss": _percent(pump.head_loss),
+            "wear": None if pump.wear is None else _wear(pump.wear, display),
+        }
+        for pump in case.installed
+    ]
+
+
+def _wear(fit: WearFit, display: Display) -> dict[str, Any]:
+    return {
+        "points": fit.points,
+        "reading_error": _percent(fit.reading),
+        "head_loss": _percent(fit.loss),
+        "head_loss_uncertainty": _percent(fit.loss_error),
+        "head_loss_residual": display.number("head", round(fit.loss_residual, 9)),
+        "leakage": display.number("flow", fit.leak),
+        "leakage_uncertainty": display.number("flow", fit.leak_error),
+        "leakage_residual": display.number("head", round(fit.leak_residual, 9)),
+        "nearer": WEAR_READINGS[fit.prefers],
+        "cautions": wear_cautions(fit),
+    }
+
+
+def wear_cautions(fit: WearFit) -> list[str]:
+    """What the points of a fit leave open, in words."""
+    return [words for caution, words in WEAR_CAUTIONS.items() if caution in fit.cautions]
+
+
 def _quantity(unit: str) -> str:
     """Quantity of a unit, "" where it is shown as it is: kelvin stands for a difference of temperature."""
     if unit == "K":
@@ -217,7 +269,10 @@ def states(bench: Bench, display: Display, run: Run, *, today: bool = False) -> 
                 "pump": names.pump(case, column),
                 "runs": bool(run.conditions.runs[place, column]) and not (today and column == 0),
                 "flow": display.number("flow", run.flow[row, place, column]),
-                "flow_of_best": _percent(run.flow[row, place, column] / run.ratings.bep_flow[row, column]),
+                "flow_of_best": _percent(
+                    run.flow[row, place, column] / in_state(run.bounds.best, place)[row, column]
+                ),
+                "speed": tidy(_speed(bench, run, place, column)),
                 "past_end": bool(np.isposinf(run.flow[row, place, column])),
                 "not_measured": bool(np.isneginf(run.flow[row, place, column])),
                 "head": display.number("head", run.head[row, place, column]),
@@ -233,6 +288,7 @@ def states(bench: Bench, display: Display, run: Run, *, today: bool = False) -> 
                 "state": names.where(case, state),
                 "duty": case.duties[state.duty].name,
                 "level": names.level(case, state),
+                "liquid": names.liquid(case, state),
                 "kind": Kind(state.kind).name.lower().replace("_", " "),
                 "running": names.combination(case, state.running, 0 if today else state.new),
                 "asked": display.number("flow", state.asked),
@@ -242,6 +298,14 @@ def states(bench: Bench, display: Display, run: Run, *, today: bool = False) -> 
             }
         )
     return result
+
+
+def _speed(bench: Bench, run: Run, place: int, column: int) -> float:
+    """Speed of one pump in one state of the first candidate [rpm], NaN where it does not run."""
+    if np.isnan(run.flow[0, place, column]):
+        return np.nan
+    at_load = run.pumps.speed[0] if column == 0 else bench.header.case.pumps.speed[column - 1]
+    return float(at_load * in_state(run.bounds.speed, place)[0, column])
 
 
 def _percent(value: float) -> float | None:

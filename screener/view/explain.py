@@ -9,12 +9,15 @@ import numpy as np
 from screener.changes.closer import Closer
 from screener.model.arrays import Floats
 from screener.model.finding import Outcome, Verdict
-from screener.model.run import Run
+from screener.model.run import Run, in_state
 from screener.screening.assess import Bench
 from screener.screening.one import Explained
 from screener.screening.reach import Reason
+from screener.view import bypass as view_bypass
 from screener.view import closer as view_closer
 from screener.view import data, names
+from screener.view import liquids as view_liquids
+from screener.view import speeds as view_speeds
 from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
 from screener.view.data import Origin
 from screener.view.display import DASH, Display, percent, plain, word
@@ -37,6 +40,7 @@ def screen(closer: Closer, origin: Origin) -> Screen:
     verdict = Verdict(int(candidates.verdict[0]))
     states = _states(bench, display, result.judged.run)
     items = found(bench, display, candidates.findings, 0)
+    speeds = view_speeds.of_new(bench, result.judged.run)
     blocks: list[Block] = [
         Heading(case.title, f"{len(bench.header.states)} states"),
         Lines([_pump(result, display)]),
@@ -48,16 +52,26 @@ def screen(closer: Closer, origin: Origin) -> Screen:
         ),
         states,
         *_as_set(result, display),
+        *view_liquids.viscous(bench, result.judged.run.pumps),
+        *view_speeds.speeds(bench, speeds),
         Heading("EVERY CRITERION", "worst place of each"),
         _criteria(bench, display, items),
         *view_closer.changes(bench, display, closer.changes, verdict),
+        *view_bypass.bypasses(bench, display, closer.bypasses, closer.with_bypasses),
+        *view_bypass.heating(bench, display, closer.warming),
         *view_closer.corners(bench, display, closer.corners),
+        *view_closer.readings(bench, display, closer.readings, result.table.sources[result.model]),
         Lines(_figures(result, display)),
         Lines(data.CAUTIONS, Tone.QUIET),
     ]
     more = {
+        "viscous": view_liquids.viscous_data(bench, result.judged.run.pumps),
+        "speeds": view_speeds.speeds_data(bench, speeds),
+        "bypasses": view_bypass.bypasses_data(bench, display, closer.bypasses, closer.with_bypasses),
+        "heating": view_bypass.heating_data(bench, display, closer.warming),
         "changes": view_closer.changes_data(bench, display, closer.changes),
-        "tolerance": view_closer.corners_data(bench, display, closer.corners),
+        "tolerance": view_closer.corners_data(bench, display, closer.corners, 0),
+        "reading_error": view_closer.readings_data(bench, display, closer.readings, 0),
     }
     return Screen(blocks, states, {**_data(result, display, origin, items), **more})
 
@@ -176,7 +190,9 @@ def _states(bench: Bench, display: Display, run: Run) -> Table:
                 display.cell("head", run.header[0, place]),
                 display.cell("flow", run.total[0, place]),
                 *(_flow(display, run, place, column) for column in range(len(flow))),
-                percent(flow[0] / run.ratings.bep_flow[0, 0]) if np.isfinite(flow[0]) else Cell(DASH),
+                percent(flow[0] / in_state(run.bounds.best, place)[0, 0])
+                if np.isfinite(flow[0])
+                else Cell(DASH),
                 plain(margins[0], 2),
                 plain(float(np.fmin.reduce(margins)), 2),
                 display.cell("power", run.power[0, place, 0]),

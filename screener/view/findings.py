@@ -58,7 +58,7 @@ def found(bench: Bench, display: Display, findings: Findings, row: int) -> list[
     for column, criterion in enumerate(criteria()):
         state, pump = int(findings.state[row, column]), int(findings.pump[row, column])
         observed = float(findings.observed[row, column])
-        end = bench.header.branches.end[pump - 1] if pump > 0 else np.nan
+        end = bench.header.standing[state].branches.end[pump - 1] if pump > 0 and state >= 0 else np.nan
         result.append(
             Found(
                 criterion=criterion,

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from screener.model.run import Run
+from screener.model.run import Run, in_state
 from screener.view.blocks import Cell, Tone
 from screener.view.display import Display
 
@@ -18,10 +18,14 @@ def flow_cell(display: Display, run: Run, place: int, column: int, row: int = 0)
     """Flow of one pump in one state of one candidate; `column` 0 is the new pump."""
     value = float(run.flow[row, place, column])
     if np.isposinf(value):
-        return Cell(f"past {display.text('flow', run.ratings.end[row, column])}", None, Tone.BAD)
+        return Cell(
+            f"past {display.text('flow', in_state(run.bounds.end, place)[row, column])}", None, Tone.BAD
+        )
     if np.isneginf(value):
-        return Cell(f"below {display.text('flow', run.ratings.start[row, column])}", None, Tone.BAD)
+        return Cell(
+            f"below {display.text('flow', in_state(run.bounds.start, place)[row, column])}", None, Tone.BAD
+        )
     if value == 0:
-        opens = run.ratings.header_shutoff[row, column] > run.header[row, place]
+        opens = in_state(run.bounds.opening, place)[row, column] > run.header[row, place]
         return Cell("past peak" if opens else "shut", 0.0, Tone.BAD)
     return display.cell("flow", value)

@@ -6,11 +6,14 @@ from typing import Any
 
 import numpy as np
 
+from screener.model.case import Case
 from screener.model.finding import Outcome
-from screener.model.run import Kind, State
+from screener.model.run import Kind, State, in_state
 from screener.screening.assess import Bench
 from screener.screening.today import HeaderReport
 from screener.view import data, names, requirement
+from screener.view import liquids as view_liquids
+from screener.view import speeds as view_speeds
 from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
 from screener.view.data import Origin, head
 from screener.view.display import DASH, Display, percent, plain, word
@@ -31,6 +34,9 @@ def screen(report: HeaderReport, origin: Origin) -> Screen:
         Heading("TODAY, WITHOUT THE NEW PUMP"),
         table,
         Lines(_nothing_flows(bench), Tone.WARNING),
+        *_wear(case, display),
+        *view_liquids.viscous(bench, None),
+        *view_speeds.speeds(bench, report.usable),
         *requirement.blocks(report, display),
         Heading("PERMITTED HEADER FLOW TODAY"),
         _bands(report, display),
@@ -113,7 +119,11 @@ def _today(bench: Bench, display: Display) -> Table:
                 display.cell("flow", run.total[0, place]),
                 display.cell("head", run.header[0, place]),
                 *(_flow(bench, display, place, row) for row in kinds),
-                percent(_worst(run.flow[0, place] / run.ratings.bep_flow[0], running, farthest_from=1.0)),
+                percent(
+                    _worst(
+                        run.flow[0, place] / in_state(run.bounds.best, place)[0], running, farthest_from=1.0
+                    )
+                ),
                 plain(_worst(run.npsh_available[0, place] / run.npsh_required[0, place], running), 2),
                 percent(-_worst(-run.power[0, place] / run.ratings.motor[0], running)),
             ]
@@ -150,6 +160,46 @@ def _worst(values: Any, columns: list[int], farthest_from: float | None = None) 
     if not finite:
         return np.nan
     return min(finite) if farthest_from is None else max(finite, key=lambda value: abs(value - farthest_from))
+
+
+def _wear(case: Case, display: Display) -> list[Block]:
+    """What was fitted to points measured in the field, and what those points leave open."""
+    fitted = [(pump.tag, pump.wear) for pump in case.installed if pump.wear is not None]
+    if not fitted:
+        return []
+    columns = [
+        Column("pump", "pump", left=True),
+        Column("points", "points"),
+        Column("head_loss", "head lost", "%"),
+        Column("head_loss_uncertainty", "+/-", "%", rank=1),
+        Column("head_loss_residual", "off by", display.unit("head"), rank=2),
+        Column("leakage", "or leakage", display.unit("flow")),
+        Column("leakage_uncertainty", "+/-", display.unit("flow"), rank=1),
+        Column("leakage_residual", "off by", display.unit("head"), rank=2),
+        Column("nearer", "nearer", left=True),
+    ]
+    rows = [
+        [
+            word(tag),
+            plain(fit.points, 0),
+            percent(fit.loss, 1),
+            percent(fit.loss_error, 1),
+            display.cell("head", fit.loss_residual),
+            display.cell("flow", fit.leak),
+            display.cell("flow", fit.leak_error),
+            display.cell("head", fit.leak_residual),
+            word(data.WEAR_READINGS[fit.prefers]),
+        ]
+        for tag, fit in fitted
+    ]
+    reading = percent(fitted[0][1].reading, 1).text
+    note = [
+        "Two readings of the same points: the whole curve lower, or a flow that goes round inside the pump. "
+        "+/-: standard uncertainty, by the scatter of the points and at least what an error of reading of "
+        f"{reading} % of head allows. off by: root mean square distance of the points."
+    ]
+    told = [f"{tag}: {'; '.join(data.wear_cautions(fit))}." for tag, fit in fitted if fit.cautions]
+    return [Heading("WEAR BY FIELD POINTS"), Table(columns, rows, note), Lines(told, Tone.WARNING)]
 
 
 def _bands(report: HeaderReport, display: Display) -> Table:
@@ -220,6 +270,9 @@ def _data(report: HeaderReport, display: Display, origin: Origin, already: list[
     return {
         **head(report.bench, "pump-header", origin),
         "today": data.states(report.bench, display, report.bench.today, today=True),
+        "installed": data.installed(header.case, display),
+        "viscous": view_liquids.viscous_data(report.bench, None),
+        "speeds": view_speeds.speeds_data(report.bench, report.usable),
         "requirement": requirement.rows(report.bench, display, report.needs, report.naive),
         "permitted": [
             {

@@ -62,7 +62,16 @@ def level(case: Case, state: State) -> str:
     return case.levels[state.level].name
 
 
+def liquid(case: Case, state: State) -> str:
+    """Name of the liquid of a state."""
+    return case.liquids[state.liquid].name
+
+
 def where(case: Case, state: State) -> str:
-    """A state in a few words: "peak, P-1 lost, river low"; the level only where there are several."""
-    name = situation(case, state)
-    return f"{name}, {level(case, state)}" if len(case.levels) > 1 else name
+    """A state in a few words: "peak, P-1 lost, river low"; level and liquid only where there are several."""
+    parts = [situation(case, state)]
+    if len(case.levels) > 1:
+        parts.append(level(case, state))
+    if len(case.liquids) > 1:
+        parts.append(liquid(case, state))
+    return ", ".join(parts)

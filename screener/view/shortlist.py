@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from typing import Any
+from collections.abc import Mapping
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -17,18 +18,31 @@ from screener.view.display import Display, plain, word
 from screener.view.findings import found, sentence, worst_first
 from screener.view.why_not import ranked_cells
 
+if TYPE_CHECKING:
+    from screener.changes.near import Near
+    from screener.view.closer import Nearer
+
 TOP = 10
 
 
-def screen(result: Shortlist, origin: Origin, *, top: int = TOP, everything: bool = False) -> Screen:
+def screen(
+    result: Shortlist,
+    origin: Origin,
+    *,
+    top: int = TOP,
+    everything: bool = False,
+    near: Near | None = None,
+) -> Screen:
     """The shortlist as blocks, its ranked table, and all of it as data.
 
-    top : rows shown of each group;  everything : all rows, and every model that cannot reach the duty
+    top  : rows shown of each group;  everything : all rows, and every model that cannot reach the duty
+    near : a closer look at the rows shown
     """
     case = result.bench.header.case
     display = Display(case.display)
     groups = {verdict: np.flatnonzero(result.best.verdict == verdict) for verdict in Verdict}
     shown = len(result.best) if everything else top
+    words = _nearer(result, display, near)
     accepted = groups[Verdict.ACCEPTED]
     blocks: list[Block] = [
         Heading(case.title, f"{len(result.table)} models, {len(result.bench.header.states)} states"),
@@ -37,28 +51,37 @@ def screen(result: Shortlist, origin: Origin, *, top: int = TOP, everything: boo
     if accepted.size:
         blocks += [
             Heading("ACCEPTED, BY SCORE", _more(accepted, shown)),
-            _ranked(result, display, accepted[:shown], references=True),
+            _ranked(result, display, accepted[:shown], words),
         ]
     else:
-        blocks += [Heading("NOTHING IS ACCEPTED"), _ranked(result, display, accepted, references=True)]
+        blocks += [Heading("NOTHING IS ACCEPTED"), _ranked(result, display, accepted, words)]
     blocks += why_not.most_efficient(result, display, groups)
     conditional = groups[Verdict.CONDITIONAL]
     if conditional.size:
         blocks += [
             Heading("CONDITIONAL: NOTHING FAILED, SOMETHING IS NOT KNOWN", _more(conditional, shown)),
-            why_not.conditional(result, display, conditional[:shown]),
+            why_not.conditional(result, display, conditional[:shown], words),
         ]
     rejected = groups[Verdict.REJECTED]
     if rejected.size:
         blocks += [
             Heading("REJECTED, NEAREST FIRST", _more(rejected, shown)),
-            why_not.rejected(result, display, rejected[:shown], everything),
+            why_not.rejected(result, display, rejected[:shown], everything, words),
         ]
     blocks += why_not.out_of_reach(result, display, everything)
     blocks.append(Lines(_notes(result, display), Tone.QUIET))
     blocks.append(Lines(data.CAUTIONS, Tone.QUIET))
-    flat = _flat(result, display)
-    return Screen(blocks, flat, _data(result, display, origin, groups, everything=everything))
+    flat = _flat(result, display, words)
+    return Screen(blocks, flat, _data(result, display, origin, groups, words, everything=everything))
+
+
+def _nearer(result: Shortlist, display: Display, near: Near | None) -> Mapping[int, Nearer]:
+    """The closer look by row of the best candidates; nothing of it is loaded where there was none."""
+    if near is None:
+        return {}
+    from screener.view.closer import nearer
+
+    return nearer(result.bench, display, near, result.best.verdict)
 
 
 def _requirement(result: Shortlist, display: Display) -> str:
@@ -88,7 +111,7 @@ def _more(rows: Any, shown: int) -> str:
     return f"{len(rows) - shown} more: --top or --all" if len(rows) > shown else ""
 
 
-def _ranked(result: Shortlist, display: Display, rows: Any, *, references: bool = False) -> Table:
+def _ranked(result: Shortlist, display: Display, rows: Any, words: Mapping[int, Nearer]) -> Table:
     """The ranked table, with one more of each kind of installed pump under it."""
     columns = [
         Column("rank", ""),
@@ -106,6 +129,7 @@ def _ranked(result: Shortlist, display: Display, rows: Any, *, references: bool 
         Column("firm_flow", "firm %", "%", rank=7),
         Column("cautions", "cautions", rank=8),
         Column("restored", "installed as new", left=True, rank=1 if result.restored is not None else 9),
+        *(why_not.HOLDS if words else ()),
     ]
     table = [
         [
@@ -113,22 +137,23 @@ def _ranked(result: Shortlist, display: Display, rows: Any, *, references: bool 
             word(result.table.ids[int(result.best.model[row])]),
             *ranked_cells(result.best, display, row),
             _as_new(result, int(row)),
+            *why_not.holds(words, row),
         ]
         for number, row in enumerate(rows)
     ]
-    if references:
-        case = result.bench.header.case
-        for row, installed in enumerate(result.same_as):
-            failed = result.references.verdict[row] == Verdict.REJECTED
-            label = f"one more {case.installed[installed].tag}" + (" (fails)" if failed else "")
-            cells = [word("="), word(label), *ranked_cells(result.references, display, row), word("")]
-            table.append([Cell(cell.text, cell.value, Tone.QUIET) for cell in cells])
-    fails = _references_fail(result, display) if references else []
+    case = result.bench.header.case
+    for row, installed in enumerate(result.same_as):
+        failed = result.references.verdict[row] == Verdict.REJECTED
+        label = f"one more {case.installed[installed].tag}" + (" (fails)" if failed else "")
+        cells = [word("="), word(label), *ranked_cells(result.references, display, row)]
+        cells += [word("")] * (len(columns) - len(cells))
+        table.append([Cell(cell.text, cell.value, Tone.QUIET) for cell in cells])
     note = [
-        *fails,
+        *_references_fail(result, display),
         "eff: useful head of the system over shaft energy, all pumps. share: load-share difference, points. "
         "% BEP: lowest flow over best efficiency, any pump in any duty. NPSH: lowest NPSHa/NPSHr, trips "
         "included.",
+        *([why_not.HOLDS_NOTE] if words else []),
     ]
     return Table(columns, table, note)
 
@@ -188,20 +213,23 @@ def _notes(result: Shortlist, display: Display) -> list[str]:
     return notes
 
 
-def _flat(result: Shortlist, display: Display) -> Table:
-    """Every candidate shown, one row each, every figure: what the csv holds."""
+def _flat(result: Shortlist, display: Display, words: Mapping[int, Nearer]) -> Table:
+    """Every candidate, one row each, every figure: what the csv holds."""
     items = [data.candidate(result, display, row) for row in range(len(result.best))]
     keys = data.CANDIDATE_KEYS
     columns = [
         Column("rank", "rank"),
         *(Column(key, key, FLAT_UNITS.get(key, "")) for key in keys),
         Column("reasons", "reasons", left=True),
+        *((Column("would_pass_with", "would pass with", left=True), *why_not.HOLDS) if words else ()),
     ]
     rows = []
     for number, item in enumerate(items):
         failed = [f["criterion"] for f in item["findings"] if f["outcome"] == "fail"]
         cells = [Cell("" if item[key] is None else str(item[key]), item[key]) for key in keys]
-        rows.append([Cell(str(number + 1), number + 1), *cells, word(" ".join(failed))])
+        change = [word(words[number].change if number in words else "")] if words else []
+        more = [*change, *why_not.holds(words, number)]
+        rows.append([Cell(str(number + 1), number + 1), *cells, word(" ".join(failed)), *more])
     named = {"diameter": "length", "wanted_diameter": "length", "power": "power", "motor": "power"}
     columns = [
         Column(c.key, c.title, display.unit(named[c.key]), c.left) if c.key in named else c for c in columns
@@ -222,12 +250,22 @@ FLAT_UNITS = {
 
 
 def _data(
-    result: Shortlist, display: Display, origin: Origin, groups: dict[Verdict, Any], *, everything: bool
+    result: Shortlist,
+    display: Display,
+    origin: Origin,
+    groups: dict[Verdict, Any],
+    words: Mapping[int, Nearer],
+    *,
+    everything: bool,
 ) -> dict[str, Any]:
     bench, reason = result.bench, result.reach.reason
     case = bench.header.case
     listed = {
-        data.VERDICTS[verdict]: [data.candidate(result, display, int(row)) for row in rows]
+        data.VERDICTS[verdict]: [
+            data.candidate(result, display, int(row))
+            | ({"closer": words[int(row)].data} if int(row) in words else {})
+            for row in rows
+        ]
         for verdict, rows in groups.items()
     }
     return {

@@ -7,6 +7,7 @@ from typing import Any
 
 import numpy as np
 
+from screener.changes.laws import ByLaw
 from screener.model.arrays import Floats
 from screener.model.finding import Outcome, Verdict
 from screener.screening.judge import worst_criterion
@@ -18,13 +19,17 @@ from screener.view.display import Display, percent, plain, word
 from screener.view.explain import VERDICT_TONES, passing
 from screener.view.findings import found, sentence, worst_first
 from screener.view.flows import flow_cell
+from screener.view.laws import laws, laws_data
 
 ABREAST = 9
 WORDS = {Verdict.ACCEPTED: "pass", Verdict.CONDITIONAL: "open", Verdict.REJECTED: "FAIL"}
 
 
-def screen(result: Trims, origin: Origin) -> Screen:
-    """The diameters as blocks, one row a diameter as the table, and all of it as data."""
+def screen(result: Trims, by_law: ByLaw, origin: Origin) -> Screen:
+    """The diameters as blocks, one row a diameter as the table, and all of it as data.
+
+    by_law : the same pump at the same diameters under each trim law
+    """
     bench, candidates = result.bench, result.judged.candidates
     display = Display(bench.header.case.display)
     diameters = candidates.diameter
@@ -37,9 +42,11 @@ def screen(result: Trims, origin: Origin) -> Screen:
         Lines([_sentence(result, display, accepted)]),
         _side_by_side(result, display, shown),
         Lines([f"Lowest and highest: permitted header flow with {_everyone(result)} running."], Tone.QUIET),
+        *laws(by_law, display),
         Lines(data.CAUTIONS, Tone.QUIET),
     ]
-    return Screen(blocks, _flat(result, display), _data(result, display, origin, accepted))
+    content = _data(result, display, origin, accepted) | {"trim_laws": laws_data(by_law, display)}
+    return Screen(blocks, _flat(result, display), content)
 
 
 def _abreast(verdict: Any, best: int) -> Any:

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from typing import Any
+from collections.abc import Mapping, Sequence
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -16,11 +16,35 @@ from screener.view.blocks import Block, Cell, Column, Heading, Lines, Table, Ton
 from screener.view.display import Display, percent, plain, word
 from screener.view.findings import Found, found, sentence, unit_of, worst_first
 
+if TYPE_CHECKING:
+    from screener.view.closer import Nearer
+
 FEW = 20
 """Models in a catalog up to which those that cannot reach the duties are listed one by one."""
 
 SHOWN = 4
 """Reasons shown of each rejected pump, unless everything is asked for."""
+
+HOLDS = (
+    Column("corners", "corners", left=True),
+    Column("reading", "reading", left=True, rank=1),
+)
+"""Columns on whether a verdict holds; `holds` fills them."""
+
+HOLDS_NOTE = (
+    "corners: the verdict holds with curves as high or low as their tolerance allows, else which pump fails "
+    "first and when. reading: it holds with the curve read wrong, else in how many of the runs it turns."
+)
+
+
+def holds(words: Mapping[int, Nearer], row: int) -> list[Cell]:
+    """Whether the verdict of a candidate holds, where something was looked at closer."""
+    if row not in words:
+        return [word("")] * len(HOLDS) if words else []
+    return [
+        word(text, Tone.GOOD if text == "hold" else Tone.WARNING)
+        for text in (words[row].corners, words[row].reading)
+    ]
 
 
 def most_efficient(result: Shortlist, display: Display, groups: dict[Verdict, Any]) -> list[Block]:
@@ -72,13 +96,14 @@ def _sentence(item: Found, display: Display, pump: str) -> str:
     return f"{text[0].upper()}{text[1:]}."
 
 
-def conditional(result: Shortlist, display: Display, rows: Any) -> Table:
+def conditional(result: Shortlist, display: Display, rows: Any, words: Mapping[int, Nearer]) -> Table:
     """What each open candidate would need to be judged."""
     columns = [
         Column("pump", "pump", left=True),
         Column("diameter", display.unit("length")),
         Column("score", "score"),
         Column("efficiency", "eff %", rank=1),
+        *(HOLDS if words else ()),
         Column("missing", "not assessed for want of", left=True),
     ]
     table = []
@@ -89,13 +114,15 @@ def conditional(result: Shortlist, display: Display, rows: Any) -> Table:
         model = int(result.best.model[row])
         figures = ranked_cells(result.best, display, int(row))
         for number, need in enumerate(needs):
-            head = [word(result.table.ids[model]), *figures[:3]] if number == 0 else [word("")] * 4
-            table.append([*head, word(need)])
+            head = [word(result.table.ids[model]), *figures[:3], *holds(words, int(row))]
+            table.append([*(head if number == 0 else [word("")] * len(head)), word(need)])
     return Table(columns, table)
 
 
-def rejected(result: Shortlist, display: Display, rows: Any, everything: bool) -> Table:
-    """One row for each reason, the worst first: is, limit, where."""
+def rejected(
+    result: Shortlist, display: Display, rows: Any, everything: bool, words: Mapping[int, Nearer]
+) -> Table:
+    """One row for each reason, the worst first: is, limit, where; under them what it would pass with."""
     columns = [
         Column("pump", "pump", left=True),
         Column("diameter", display.unit("length"), rank=1),
@@ -127,7 +154,11 @@ def rejected(result: Shortlist, display: Display, rows: Any, everything: bool) -
         if len(reasons) > len(kept):
             more = f"and {len(reasons) - len(kept)} more"
             table.append([word(""), word(""), word(more, Tone.QUIET), *[word("")] * 5])
-    return Table(columns, table, ["screener explain CASE PUMP tells what would make one of them pass."])
+        if row in words:
+            change = words[row].change
+            table.append([word(""), word(""), word("would pass with"), *[word("")] * 4, word(change)])
+    note = "screener explain CASE PUMP tells what would make one of them pass"
+    return Table(columns, table, [f"{note}, and --closer the easiest for each." if not words else f"{note}."])
 
 
 def _what(item: Found, display: Display) -> str:

@@ -1,4 +1,4 @@
-"""Benchmark, run by hand: `python -m tests.bench.run [help] [intersection] [screen] [size]`.
+"""Benchmark, run by hand: `python -m tests.bench.run [help] [intersection] [screen] [full] [size]`.
 
 Every ratio is taken between two things timed in this one process or its children, the median of some
 repeats of each in turn, since the speed of a machine varies more than what is measured here.
@@ -12,6 +12,7 @@ import subprocess
 import sys
 import time
 from collections.abc import Callable
+from dataclasses import replace
 from functools import partial
 from pathlib import Path
 
@@ -20,12 +21,14 @@ import numpy as np
 from screener.case.read import read_case
 from screener.catalog.compile import compile_table
 from screener.catalog.read import read
+from screener.changes.near import look_nearer
 from screener.files.document import load
 from screener.header.branch import BranchCurves, branch_curves, take
 from screener.header.left import Left
 from screener.header.meet import Mark, meet
 from screener.hydraulics.similarity import trimmed
-from screener.model.case import Case
+from screener.hydraulics.wear import uniform
+from screener.model.case import Case, Control, Drive, Liquid
 from screener.model.curves import Pumps, PumpTable
 from screener.screening.assess import CHUNK, Bench, set_up
 from screener.screening.shortlist import shortlist
@@ -40,6 +43,31 @@ def demo() -> Case:
     """The case of the demo."""
     table = compile_table(read([DEMO / "pumps"])[0])
     return read_case(load(DEMO / "case.toml"), table)
+
+
+def everything() -> Case:
+    """The demo with two liquids, two levels, a worn pump, and a pump that holds one duty by its speed."""
+    plain = demo()
+    thick = Liquid("silt water", np.nan, 1050.0, 20e-6, 1500.0, 4000.0, viscous=True)
+    first, second = plain.installed
+    loss = 0.03
+    return replace(
+        plain,
+        liquids=(*plain.liquids, thick),
+        levels=plain.levels[:2],
+        duties=tuple(
+            replace(duty, levels=(0,) if duty.rated else (1,), liquid=liquid, control=control)
+            for duty, liquid, control in zip(
+                plain.duties, (0, 0, 1), (Control.THROTTLED, Control.SPEED, Control.THROTTLED), strict=True
+            )
+        ),
+        installed=(
+            replace(first, drive=Drive(0.7, 1.0)),
+            replace(second, head_loss=loss),
+        ),
+        as_new=plain.pumps,
+        pumps=uniform(plain.pumps, loss=np.array([0.0, loss])),
+    )
 
 
 def seconds(work: Callable[[], object], repeats: int = 5) -> float:
@@ -164,6 +192,32 @@ def screen(bench: Bench, case: Case, alone: float) -> None:
     show("screen / intersection alone", f"{ratio:.1f}", "at most 4", ratio <= 4)
 
 
+def full(plain: Case) -> None:
+    """Liquids, levels, speed and wear beside the plain case, corners of what is shown included."""
+    table, case = synthetic.table(MODELS), everything()
+    corners = []
+
+    def closer() -> None:
+        corners.append(look_nearer(shortlist(case, table), top=10))
+
+    turns = [
+        (
+            seconds(lambda: shortlist(plain, table), 1),
+            seconds(lambda: shortlist(case, table), 1),
+            seconds(closer, 1),
+        )
+        for _ in range(3)
+    ]
+    simple, whole, near = (statistics.median(times) for times in zip(*turns, strict=True))
+    show("two liquids, levels, wear, one variable speed / plain", f"{whole / simple:.1f}")
+    show(
+        "the same with corners of what is shown / plain",
+        f"{near / simple:.1f}",
+        "at most 6",
+        near <= 6 * simple,
+    )
+
+
 def size() -> None:
     """Time and memory from 1,000 to 100,000 models, each in a process of its own."""
     for models in (1_000, 3_000, 10_000, 30_000, 100_000):
@@ -199,6 +253,8 @@ def main(wanted: list[str]) -> None:
     alone = intersection(bench) if every or {"intersection", "screen"} & set(wanted) else np.nan
     if every or "screen" in wanted:
         screen(bench, case, alone)
+    if every or "full" in wanted:
+        full(case)
     if every or "size" in wanted:
         size()
 

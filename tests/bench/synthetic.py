@@ -76,6 +76,7 @@ def table(
         minimum=frozen(np.where(random.random(count) < 0.2, np.nan, np.round(largest * 0.8, 3))),
         flow_exponent=frozen(np.ones(count)),
         head_exponent=frozen(np.full(count, 2.0)),
+        law_inlet=frozen(np.zeros(count)),
         efficiency_loss=frozen(np.full(count, 0.2)),
         npsh_speed_exponent=frozen(np.full(count, 2.0)),
         stages=frozen(np.ones(count), np.int64),
@@ -87,5 +88,7 @@ def table(
         allowable_pressure=each(10e5, 25e5, 0.05),
         maximum_power=each(100e3, 400e3, 0.3),
         casing_volume=each(0.05, 0.3, 0.5),
+        lowest_speed=frozen(np.full(count, np.nan)),
+        highest_speed=frozen(np.full(count, np.nan)),
         head_tolerance=each(0.03, 0.07, 0.2),
     )

@@ -14,6 +14,7 @@ import pytest
 
 from screener.case.load import load
 from screener.changes.closer import look_closer
+from screener.changes.laws import by_law
 from screener.cli import run
 from screener.files import shipped
 from screener.screening.one import explain, trims
@@ -96,13 +97,15 @@ def screens_of() -> Callable[..., dict[str, Screen]]:
         }
         row = loaded.catalog.ids.index(pump)
         several = trims(loaded.case, loaded.catalog, row)
+        steps = several.judged.candidates.diameter
+        under = by_law(several.bench, loaded.entries[row], steps=steps, chosen=several.best)
         one = look_closer(explain(loaded.case, loaded.catalog, row))
         for name in names or (pump,):
             table = replace(loaded.catalog, ids=(name,) * len(loaded.catalog))
             screens[f"explain {name}"] = explain_view.screen(
                 replace(one, explained=replace(one.explained, table=table)), origin
             )
-            screens[f"trims {name}"] = trims_view.screen(replace(several, table=table), origin)
+            screens[f"trims {name}"] = trims_view.screen(replace(several, table=table), under, origin)
         return screens
 
     return make

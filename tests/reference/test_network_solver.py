@@ -9,12 +9,13 @@ from __future__ import annotations
 import os
 import warnings
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from epanet import toolkit as net
 
 from screener.header.branch import branch_curves
+from screener.header.held import Varying, hold
 from screener.header.left import flow_left
 from screener.header.meet import Mark, meet
 from screener.header.system import SystemCurve
@@ -34,12 +35,13 @@ MINOR_LOSS = 0.02517  # the solver's 8 / (g pi^2) in feet and seconds, for a pip
 
 @dataclass(frozen=True)
 class Pump:
-    """Points [m3/s, m], suction head [m] and branch loss [m per (m3/s)^2]."""
+    """Points [m3/s, m], suction head [m], branch loss [m per (m3/s)^2], speed over that of the points."""
 
     flow: Floats
     head: Floats
     suction: float
     loss: float
+    speed: float = 1.0
 
 
 @dataclass(frozen=True)
@@ -113,6 +115,7 @@ def network(header: Header) -> tuple[float, list[float]] | None:
             project, curve, _doubles(pump.flow / FOOT**3), _doubles(pump.head / FOOT), len(pump.flow)
         )
         net.setheadcurveindex(project, links[-1], curve)
+        net.setlinkvalue(project, links[-1], net.INITSETTING, pump.speed)
         pipe(net.CVPIPE, f"branch-{number}", "header", pump.loss)
     if np.isinf(header.demand):
         node("users", net.RESERVOIR, header.static)
@@ -173,3 +176,49 @@ def test_random_headers(pumps_of: Callable[..., Pumps], system_of: Callable[...,
     assert installed_shut > HEADERS / 4
     assert new_shut > HEADERS / 10
     assert sizes == {2, 3, 4, 5, 6}
+
+
+def test_random_headers_held_by_speed(pumps_of: Callable[..., Pumps]) -> None:
+    """The speed that holds a flow, given to the solver as its own setting of the pumps' speed.
+
+    One pump, or two that share one speed, vary; the solver finds the flows on its own, nothing throttled.
+    """
+    rng = np.random.default_rng(7)
+    solved = 0
+    for _ in range(60):
+        header = random_header(rng, fixed=False)
+        many = int(rng.integers(1, 3))
+        varying, fixed = header.pumps[-many:], header.pumps[:-many]
+        ends_at = [p.suction + p.head[-1] - p.loss * p.flow[-1] ** 2 for p in header.pumps]
+        low, high = max(header.static, *ends_at), max(p.suction + p.head[0] for p in varying)
+        if high <= low:
+            continue
+        head = low + rng.uniform(0.1, 0.95) * (high - low)
+        asked = float(np.sqrt((head - header.static) / header.friction))
+        flows = [_flow(p, head) for p in fixed]
+        kinds = [_kind(p, pumps_of) for p in varying]
+        found = hold(kinds, head=head, wanted=np.array([asked - sum(flows)]))
+        if found.short[0] or found.over[0] or not np.isfinite(found.flow).all():
+            continue
+        ratio = float(found.ratio[0])
+        turned = [replace(p, speed=ratio) for p in varying]
+        solution = network(Header([*fixed, *turned], header.static, header.friction, np.inf))
+        if solution is None:
+            continue
+        solved += 1
+        ends = np.array([p.flow[-1] for p in header.pumps])
+        assert abs(solution[0] - head) <= OF_SHUTOFF * max(p.head[0] for p in header.pumps)
+        got = np.array([*flows, *found.flow[0]])
+        assert np.all(np.abs(got - solution[1]) <= OF_CURVE_END * ends), (got, solution[1])
+    assert solved >= 20
+
+
+def _kind(pump: Pump, pumps_of: Callable[..., Pumps]) -> Varying:
+    branch = Branch(discharge=Loss((pump.loss,), (2.0,)), suction_head=pump.suction)
+    return Varying(pumps_of([(pump.flow, pump.head)]), branch, np.array([0.5]), np.array([1.1]), 1, 0.0, 0.0)
+
+
+def _flow(pump: Pump, head: float) -> float:
+    """Flow of one pump at a header head, by straight lines between its points."""
+    at_header = pump.suction + pump.head - pump.loss * pump.flow**2
+    return float(np.interp(-head, -at_header, pump.flow, left=0.0))

@@ -12,7 +12,7 @@ import pytest
 from screener.criteria import default_limits
 from screener.model.arrays import frozen
 from screener.model.curves import Curves, Pumps
-from screener.model.run import Conditions, Kind, Ratings, Run
+from screener.model.run import Bounds, Conditions, Kind, Ratings, Run
 
 KINDS = (Kind.DUTY, Kind.DUTY, Kind.WIDE_OPEN, Kind.TRIP)
 """States by default: the rated duty, another duty, wide open, a trip."""
@@ -30,13 +30,17 @@ RUN = {
     "spare_head": 10.0,
     "shutoff_match": 0.01,
     "load_share": 0.05,
+    "opening_speed": np.nan,
+    "least_speed": np.nan,
 }
 CONDITIONS = {
     "duty": 0,
     "kind": KINDS,
     "rated": (True, False, False, False),
     "lowest": (False, True, False, False),
+    "usual": True,
     "open": (False, False, True, True),
+    "held": False,
     "asked": 0.3,
     "wanted_head": 37.5,
     "density": 1000.0,
@@ -64,27 +68,45 @@ RATINGS = BOTH | {
     "droop": 0.0,
     "header_shutoff": 50.0,
     "header_summit": 50.0,
-    "start": 0.0,
-    "end": 0.2,
-    "thermal_power": 30e3,
     "motor": 55e3,
 }
+BOUNDS = {
+    "speed": 1.0,
+    "start": 0.0,
+    "end": 0.2,
+    "best": RATINGS["bep_flow"],
+    "minimum": RATINGS["minimum_flow"],
+    "largest": RATINGS["maximum_flow"],
+    "summit": RATINGS["summit"],
+    "opening": RATINGS["header_shutoff"],
+    "thermal_power": 30e3,
+}
+RATED = {"bep_flow": "best", "minimum_flow": "minimum", "summit": "summit", "header_shutoff": "opening"}
+"""Ratings of which a test means what holds in every state, too."""
 PUMPS = BOTH | {
     "model": 0,
     "diameter": 0.39,
     "maximum": 0.41,
     "minimum": 0.33,
     "from_test": 0.0,
+    "trim_uncertainty": 0.0,
+    "law_inlet": 0.15,
     "speed": 1450.0,
     "casing_volume": 0.1,
+    "lowest_speed": np.nan,
+    "highest_speed": np.nan,
+    "stages": 1.0,
+    "npsh_speed_exponent": 2.0,
 }
-TABLES = {"run": RUN, "conditions": CONDITIONS, "ratings": RATINGS, "pumps": PUMPS}
+TABLES = {"run": RUN, "conditions": CONDITIONS, "ratings": RATINGS, "bounds": BOUNDS, "pumps": PUMPS}
 _TYPES = {
     "duty": np.int64,
     "model": np.int64,
     "kind": np.int8,
     "rated": np.bool_,
     "lowest": np.bool_,
+    "usual": np.bool_,
+    "held": np.bool_,
     "open": np.bool_,
     "runs": np.bool_,
 }
@@ -93,12 +115,17 @@ _TYPES = {
 def _run(*, candidates: int = 1, states: int = 4, installed: int = 2, **changes: dict[str, Any]) -> Run:
     """Make a run whose arrays refuse to be written.
 
-    changes : "run", "conditions", "ratings" or "pumps" = {column: values that broadcast to its shape}
+    changes : "run", "conditions", "ratings", "bounds" or "pumps" = {column: values that broadcast to its
+              shape}; bounds and ratings are (c, 1 + p), the same in every state
     """
     c, s, width = candidates, states, 1 + installed
     shapes = {"header": (c, s), "total": (c, s), "spare_head": (c, width)}
     shapes |= {"shutoff_match": (c, installed), "load_share": (c, installed), "runs": (s, width)}
-    usual = {"run": (c, s, width), "conditions": (s,), "ratings": (c, width), "pumps": (c,)}
+    shapes |= {"opening_speed": (c, s), "least_speed": (c, s)}
+    usual = {"run": (c, s, width), "conditions": (s,), "ratings": (c, width), "bounds": (c, width)}
+    usual["pumps"] = (c,)
+    rated = {RATED[name]: value for name, value in changes.get("ratings", {}).items() if name in RATED}
+    changes["bounds"] = rated | changes.get("bounds", {})
 
     def columns(table: str) -> dict[str, Any]:
         values = TABLES[table] | changes.get(table, {})
@@ -112,6 +139,7 @@ def _run(*, candidates: int = 1, states: int = 4, installed: int = 2, **changes:
     return Run(
         pumps=Pumps(curves=Curves(**nothing), **columns("pumps")),
         ratings=Ratings(**columns("ratings")),
+        bounds=Bounds(**{name: frozen(values[:, None]) for name, values in columns("bounds").items()}),
         conditions=Conditions(**columns("conditions")),
         **columns("run"),
     )
@@ -123,6 +151,7 @@ def _today(**shape: int) -> Run:
         **shape | {"candidates": 1},
         run=dict.fromkeys(RUN, np.nan),
         ratings=dict.fromkeys(RATINGS, np.nan),
+        bounds=dict.fromkeys(BOUNDS, np.nan),
         pumps=dict.fromkeys(PUMPS.keys() - {"model"}, np.nan),
     )
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
+from screener.model.case import Drive
 from screener.model.run import Kind
 from screener.ranking import figures
 
@@ -43,7 +44,7 @@ def tiny(make_run):
         made = make_run(
             states=5, installed=1, run=RUN | (run or {}), conditions=CONDITIONS | (conditions or {})
         )
-        return figures(made, made, count=2, weights=WEIGHTS | weights)
+        return figures(made, made, count=2, drives=[Drive()] * 2, weights=WEIGHTS | weights)
 
     return make
 
@@ -86,7 +87,7 @@ def test_the_worst_match_keeps_its_sign(make_run) -> None:
     matches = [[0.03, -0.08, NAN], [0.09, -0.08, 0.01], [NAN, NAN, NAN]]
     shares = [[NAN, 0.05, 0.12], [0.3, 0.1, 0.2], [NAN, NAN, NAN]]
     run = make_run(candidates=3, installed=3, run={"shutoff_match": matches, "load_share": shares})
-    found = figures(run, run, count=1, weights=WEIGHTS)
+    found = figures(run, run, count=1, drives=[Drive()] * 4, weights=WEIGHTS)
     np.testing.assert_array_equal(found.shutoff, [-0.08, 0.09, NAN])
     np.testing.assert_array_equal(found.share, [0.12, 0.3, NAN])
     assert np.isnan(found.score).tolist() == [False, False, True]
@@ -101,3 +102,13 @@ def test_an_unknown_power_of_a_running_pump_leaves_no_score(tiny) -> None:
 def test_states_that_are_no_duties_cost_nothing(tiny) -> None:
     power = [[40e3, 60e3], [30e3, NAN], [35e3, 50e3], [NAN, NAN], [NAN, NAN]]
     assert tiny(run={"power": power}).efficiency[0] == pytest.approx(EFFICIENCY, rel=1e-12)
+
+
+def test_motors_and_drives_that_lose_power_cost_energy(make_run) -> None:
+    run = make_run(installed=1)
+    shaft = figures(run, run, count=1, drives=[Drive(), Drive()], weights=WEIGHTS)
+    lossy = [Drive(motor_efficiency=0.8), Drive(motor_efficiency=0.8, drive_efficiency=0.5)]
+    drawn = figures(run, run, count=1, drives=lossy, weights=WEIGHTS)
+    # 40 kW each: 80 kW at the shafts, 50 + 100 kW drawn
+    assert drawn.power[0] / shaft.power[0] == pytest.approx(150 / 80)
+    assert drawn.efficiency[0] / shaft.efficiency[0] == pytest.approx(80 / 150)

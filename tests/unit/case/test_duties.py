@@ -102,6 +102,72 @@ def test_only_some_pumps_rotate(read: Read, problems: Problems) -> None:
     assert any("P-3" in problem for problem in told)
 
 
+def test_the_pumps_that_stay_take_turns(read: Read, problems: Problems) -> None:
+    leaves = ("new_pump = {}", 'new_pump = { replaces = "P-1" }')
+    listed = (LISTED, 'running = ["P-2", "new"]')
+    duty = read(leaves, listed).duties[1]
+    assert (duty.running, duty.new) == (((1,),), (True,))
+    assert problems(leaves, listed, ("any = 1", "any = 2")) == [
+        "any 2 pumps, but only 1 are left beside the new one"
+    ]
+    gone = "'P-1' leaves the header: the new pump replaces it"
+    assert problems(leaves) == [gone]
+    assert problems(leaves, listed, (ANY, 'running = { any = 1, of = ["P-1"], new = true }')) == [gone]
+
+
+SPEED = (", flow = 180", ', flow = 180, control = "speed"')
+RANGE = "speed_range = [60, 100]"
+FIRST = "diameter = 200 }"
+
+
+def test_control_by_speed(read: Read) -> None:
+    for changed in ((FIRST, f"{FIRST}, {RANGE}"), ("flow = 180", "flow = 180")):
+        case = read(SPEED, changed, ("new_pump = {}", f"new_pump = {{ {RANGE} }}"))
+        assert [duty.control for duty in case.duties] == [Control.THROTTLED, Control.SPEED]
+
+
+@pytest.mark.parametrize(
+    ("running", "who"),
+    [
+        ("{ any = 1, new = true }", "new, P-2"),
+        ("{ any = 1, new = false }", "P-2"),
+        ('["new", "P-2"]', "new, P-2"),
+        ('["new"]', "new"),
+    ],
+)
+def test_no_pump_that_can_hold_the_flow(problems: Problems, running: str, who: str) -> None:
+    changes = SPEED, (FIRST, f"{FIRST}, {RANGE}"), (ANY, f"running = {running}")
+    assert problems(*changes) == [f"control is by speed, but no pump has a speed range when these run: {who}"]
+
+
+def test_bypasses(read: Read) -> None:
+    given = (LISTED, f'{LISTED}, bypass = {{ "P-2" = 36, new = "5 L/s" }}')
+    assert read(given).duties[0].bypass == pytest.approx((0.005, 0.0, 0.01))
+    assert read(given).duties[1].bypass == ()
+    assert read((LISTED, f'{LISTED}, bypass = {{ "P-2" = 0 }}')).duties[0].bypass == ()
+    turns = read((ANY, f'{ANY}, bypass = {{ "P-2" = 36 }}')).duties[1]
+    assert turns.bypass == pytest.approx((0.0, 0.0, 0.01))
+
+
+@pytest.mark.parametrize(
+    ("bypass", "what"),
+    [
+        ('"P-3" = 10', "there is no pump 'P-3'"),
+        ('"P-1" = -10', "the bypass of 'P-1' is -10"),
+        ('"P-1" = 180', "'P-1' takes back 180"),
+        ('"P-2" = 10', "'P-2' does not run in this duty"),
+        ("new = 10", "'new' does not run in this duty"),
+    ],
+)
+def test_problems_of_a_bypass(problems: Problems, bypass: str, what: str) -> None:
+    assert problems((LISTED, f'running = ["P-1"], bypass = {{ {bypass} }}')) == [what]
+
+
+def test_a_bypass_at_a_misspelt_pump_is_said_once(problems: Problems) -> None:
+    changed = (LISTED, 'running = ["P1", "new"], bypass = { "P-1" = 10 }')
+    assert problems(changed) == ["there is no pump 'P1'"]
+
+
 def test_more_hours_than_a_year_has(problems: Problems) -> None:
     told = problems((LISTED, LISTED + ", hours = 8000"), (ANY, ANY + ", hours = 1000"))
     assert told == ["the duties add up to 9000 h"]

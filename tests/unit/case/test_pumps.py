@@ -4,11 +4,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
-from screener.model.case import Case
+from screener.model.arrays import frozen
+from screener.model.case import Case, Drive
+from screener.model.curves import PumpTable
 
 Read = Callable[..., Case]
 Problems = Callable[..., list[str]]
@@ -126,6 +129,64 @@ def test_problems_of_figures(problems: Problems, figures: str, what: str) -> Non
     assert problems((TRIMMED, f"{TRIMMED}, {figures}")) == [what]
 
 
+def test_fixed_speed_by_default(read: Read) -> None:
+    case = read()
+    assert not case.installed[0].drive.varies
+    assert case.installed[0].drive == case.new_pump.drive == Drive(1.0, 1.0, 1.0, 1.0)
+
+
+def test_drives(read: Read) -> None:
+    given = "speed_range = [60, 103], motor_efficiency = 93, drive_efficiency = 97.5"
+    case = read((TRIMMED, f"{TRIMMED}, {given}"), ("new_pump = {}", "new_pump = { drive_efficiency = 96 }"))
+    assert case.installed[0].drive == Drive(0.6, 1.03, 0.93, 0.975)
+    assert case.installed[1].drive == Drive()
+    assert case.new_pump.drive == Drive(drive_efficiency=0.96)
+
+
+@pytest.fixture
+def table(table: PumpTable) -> PumpTable:
+    """The first pump may run at 870 to 1500 rpm."""
+    unknown = math.nan
+    return replace(table, lowest_speed=frozen([870.0, unknown]), highest_speed=frozen([1500.0, unknown]))
+
+
+def test_a_range_within_the_catalogs(read: Read) -> None:
+    assert not read().installed[0].drive.varies
+    # [D] 60 % of 1450 rpm is 870, 103 % is 1493.5; 62 % of 1420 is 880.4
+    assert read((TRIMMED, f"{TRIMMED}, speed_range = [60, 103]")).installed[0].drive.lowest == 0.6
+    assert read((TRIMMED, f"{TRIMMED}, speed = 1420, speed_range = [62, 100]")).installed[0].drive.varies
+
+
+@pytest.mark.parametrize(
+    ("range_", "what"),
+    [
+        ("speed_range = [59, 100]", "speed_range runs from 856 to 1450 rpm"),
+        ("speed_range = [60, 104]", "speed_range runs from 870 to 1508 rpm"),
+        ("speed = 1420, speed_range = [60, 100]", "speed_range runs from 852 to 1420 rpm"),
+        (
+            "speed_range = [60, 99]",
+            "speed_range runs from 60 to 99 %: the range leaves out the speed of the curve, 100 %",
+        ),
+        ("speed_range = [100, 100]", "speed_range runs from 100 to 100 %"),
+    ],
+)
+def test_problems_of_a_range(problems: Problems, range_: str, what: str) -> None:
+    assert problems((TRIMMED, f"{TRIMMED}, {range_}")) == [what]
+
+
+def test_head_tolerance_in_place_of_the_catalogs(read: Read) -> None:
+    # ISO 9906:2012: grade 2B +-5 %, 2U 0 to +10 % [M]
+    for stated, figure in (
+        ('acceptance_grade = "2B"', 0.05),
+        ('acceptance_grade = "2U"', 0.1),
+        ("head_uncertainty = 4", 0.04),
+        ("head_uncertainty = 0", 0.0),
+    ):
+        pumps = read((TRIMMED, f"{TRIMMED}, {stated}")).pumps
+        assert pumps.head_tolerance[0] == pytest.approx(figure)
+        assert math.isnan(pumps.head_tolerance[1])
+
+
 def test_new_is_not_a_tag(problems: Problems) -> None:
     assert "an installed pump is called 'new'" in problems(('tag = "P-2"', 'tag = "new"'))
 
@@ -145,3 +206,10 @@ def test_the_free_place_as_given(read: Read, problems: Problems) -> None:
     assert (new.count, new.frequency, new.slip, new.motor_series) == (2, 60.0, 0.015, "NEMA")
     assert (new.trim_step, new.branch.suction_head) == pytest.approx((0.00254, 1.0))
     assert problems(("new_pump = {}", "new_pump = { slip = 1.5 }")) == ["slip is given without frequency"]
+
+
+def test_whom_the_new_pump_replaces(read: Read, problems: Problems) -> None:
+    listed = ('"P-1", "P-2", "new"', '"P-1", "new"')
+    assert read().new_pump.replaces == -1
+    assert read(("new_pump = {}", 'new_pump = { replaces = "P-2" }'), listed).new_pump.replaces == 1
+    assert problems(("new_pump = {}", 'new_pump = { replaces = "P-3" }')) == ["there is no pump 'P-3'"]

@@ -13,7 +13,7 @@ from screener import criteria
 from screener.case.read import catalog_paths, read_case
 from screener.errors import InputError
 from screener.files.document import Document
-from screener.model.case import Case, Loss
+from screener.model.case import Case, Loss, Tolerance
 from screener.model.curves import PumpTable
 
 Read = Callable[..., Case]
@@ -58,6 +58,14 @@ def test_units_are_shown_as_declared_npsh_like_head(read: Read) -> None:
 def test_weights_replace_the_defaults_one_by_one(read: Read) -> None:
     case = read(("site = {}", "score = { load_share = 1 }"))
     assert case.weights == {"efficiency": 1.0, "shutoff_match": 0.1, "load_share": 1.0}
+
+
+def test_tolerances(read: Read, problems: Callable[..., list[str]]) -> None:
+    assert read().tolerance == Tolerance(system_curve=0.05, trim=0.0005, reading=0.01)
+    given = "tolerance = { system_curve = 8, trim = 0.2, reading = 0 }"
+    assert read(("site = {}", given)).tolerance == Tolerance(0.08, pytest.approx(0.0002), 0.0)
+    assert read(("site = {}", 'tolerance = { trim = "0 in" }')).tolerance.trim == 0.0
+    assert problems(("site = {}", "tolerance = { trim = -0.1 }")) == ["trim is -0.1"]
 
 
 def test_limits_are_read_against_the_criteria(read: Read, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -66,6 +66,42 @@ def test_measured_heads_contain_the_pressures(read: Read) -> None:
     assert system.destination_pressure == pytest.approx(196133.0)
 
 
+def test_the_liquid_of_the_measurement(read: Read, problems: Problems) -> None:
+    system = (
+        'system = { destination_pressure = "98.0665 kPa", measured = { level = "low", flow = [180, 360], '
+    )
+    heavy = (
+        'liquid = [{ name = "water"',
+        'liquid = [{ name = "brine", density = "1250 kg/m3", \
+viscosity = "1 cSt", vapour_pressure = "2 kPa", heat_capacity = "3 kJ/(kg K)" }, { name = "water"',
+    )
+    pumped = ('"peak", flow = 360', '"peak", flow = 360, liquid = "water"')
+    # [D] 98066.5 Pa are 10 m of 1000 kg/m3 and 8 m of 1250 kg/m3; 4 and 16 m are left: k = 1600
+    with_first = (FRICTION, system + "head = [40, 52] } }")
+    assert read(with_first, heavy, pumped).system.friction.coefficient == pytest.approx((1600.0,))
+    with_other = (FRICTION, system + 'head = [42, 54], liquid = "water" } }')
+    assert read(with_other, heavy, pumped).system.friction.coefficient == pytest.approx((1600.0,))
+    unknown = (FRICTION, system + 'head = [42, 54], liquid = "waiter" } }')
+    assert problems(unknown) == ["there is no liquid 'waiter'"]
+
+
+def test_a_liquid_that_was_only_measured_with(read: Read) -> None:
+    spare = (
+        (
+            'liquid = [{ name = "water"',
+            'liquid = [{ name = "cold", kind = "water", temperature = 10 }, \
+{ name = "water"',
+        ),
+        ('pressure = "bar"', 'pressure = "bar", temperature = "degC"'),
+    )
+    oil = (
+        ("flow = 360, running", 'flow = 360, liquid = "water", running'),
+        ("flow = 180, running", 'flow = 180, liquid = "water", running'),
+    )
+    measured = (FRICTION, 'system = { measured = { level = "low", flow = [180, 360], head = [32, 45] } }')
+    assert len(read(measured, *spare, *oil).liquids) == 2
+
+
 def test_measured_heads_below_static(problems: Problems) -> None:
     measured = 'measured = { level = "low", flow = [180, 360], head = [27, 25] }'
     assert problems((FRICTION, f"system = {{ {measured} }}")) == [

@@ -16,7 +16,7 @@ from screener import units
 from screener.criteria import Observed, criteria, default_limits
 from screener.model.arrays import frozen
 from screener.model.finding import Outcome
-from screener.model.run import Conditions, Ratings, Run
+from screener.model.run import Bounds, Conditions, Ratings, Run
 from screener.screening.judge import judge
 
 EVERY = pytest.mark.parametrize("criterion", criteria(), ids=lambda criterion: criterion.name)
@@ -30,7 +30,8 @@ ALWAYS_THERE = {"start", "end", "model", "curves"}
 STANDS_IN = {
     ("region", "region_low"): "a bound of the maker's; without it there is none below",
     ("region", "region_high"): "a bound of the maker's; the largest flow stands in",
-    ("region", "maximum_flow"): "a bound of the maker's; without it there is none above",
+    ("region", "largest"): "a bound of the maker's; without it there is none above",
+    ("speed-range", "opening_speed"): "a pump of fixed speed has none",
     ("trim-range", "minimum"): "a bound of the maker's; 75 % of the largest stands in",
     ("trim-range", "diameter"): "a pump without a diameter is not cut",
     ("trim-from-test", "diameter"): "a pump without a diameter is not cut",
@@ -45,8 +46,10 @@ def varied(make_run) -> Run:
     random = np.random.default_rng(20)
     run = make_run(
         candidates=CANDIDATES,
-        run={"shutoff_match": [[0.04, -0.04]]},
-        ratings={"droop": 0.001, "thermal_power": 1e6},
+        run={"shutoff_match": [[0.04, -0.04]], "least_speed": 0.95, "opening_speed": 0.9},
+        ratings={"droop": 0.001},
+        bounds={"thermal_power": 1e6},
+        conditions={"held": (True, False, False, False)},
         pumps={"from_test": 0.04},
     )
 
@@ -64,11 +67,13 @@ def varied(make_run) -> Run:
 
     changed = off(run)
     shut = random.random(changed["flow"].shape) < 0.01
-    changed["flow"][shut] = 0.0
+    changed["flow"][shut], changed["power"][shut] = 0.0, 15e3
     for name in ("head", "efficiency", "npsh_available", "npsh_required"):
         changed[name][shut] = np.nan
     ratings = replace(run.ratings, **off(run.ratings))
-    return replace(run, **changed, ratings=ratings, pumps=replace(run.pumps, **off(run.pumps)))
+    bounds = replace(run.bounds, **off(run.bounds))
+    pumps = replace(run.pumps, **off(run.pumps))
+    return replace(run, **changed, ratings=ratings, bounds=bounds, pumps=pumps)
 
 
 def test_names_are_unique_and_are_those_of_their_files() -> None:
@@ -176,13 +181,16 @@ def test_the_varied_run_meets_every_outcome(criterion, varied, make_today, limit
 
 
 def columns() -> list[tuple[str, str]]:
-    runs = [("run", f.name) for f in fields(Run) if f.name not in ("pumps", "ratings", "conditions")]
+    runs = [
+        ("run", f.name) for f in fields(Run) if f.name not in ("pumps", "ratings", "bounds", "conditions")
+    ]
     ratings = [("ratings", f.name) for f in fields(Ratings)]
     given = ("wanted_head", "asked", "density", "heat_capacity", "suction_pressure")
     conditions = [("conditions", f.name) for f in fields(Conditions) if f.name in given]
     pumps = [("pumps", name) for name in ("diameter", "maximum", "minimum", "from_test")]
     pumps += [("pumps", name) for name in ("specific_speed", "suction_specific_speed", "maximum_power")]
-    return [*runs, *conditions, *pumps, *(r for r in ratings if r[1] not in ALWAYS_THERE)]
+    bounds = [("bounds", f.name) for f in fields(Bounds) if f.name not in ALWAYS_THERE]
+    return [*runs, *conditions, *pumps, *bounds, *(r for r in ratings if r[1] not in ALWAYS_THERE)]
 
 
 @pytest.mark.parametrize(("table", "column"), columns())

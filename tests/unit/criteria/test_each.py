@@ -22,6 +22,10 @@ def rate(**columns: object) -> dict:
     return {"ratings": columns}
 
 
+def bound(**columns: object) -> dict:
+    return {"bounds": columns}
+
+
 def pump(**columns: object) -> dict:
     return {"pumps": columns}
 
@@ -30,6 +34,8 @@ def upset(value: float, duty: float) -> list[list[float]]:
     """One value in the two duties, another one wide open and after the trip."""
     return [[duty], [duty], [value], [value]]
 
+
+HELD = {"conditions": {"held": (True, False, False, False)}}
 
 ROWS = [
     # largest rise towards more flow over the shutoff head: 0.1 %
@@ -41,8 +47,8 @@ ROWS = [
     ("curve-end", run(flow=0.191), CAUTION),
     ("curve-end", run(flow=INF), FAIL),
     ("curve-end", run(flow=NAN), NOT_ASSESSED),
-    ("curve-end", run(flow=0.051) | rate(start=0.05), PASS),
-    ("curve-end", run(flow=0.049) | rate(start=0.05), FAIL),
+    ("curve-end", run(flow=0.051) | bound(start=0.05), PASS),
+    ("curve-end", run(flow=0.049) | bound(start=0.05), FAIL),
     # of 0.3 m3/s asked: 99.93, 99.87 %
     ("duty-flow", run(total=0.2998), PASS),
     ("duty-flow", run(total=0.2996), FAIL),
@@ -66,14 +72,14 @@ ROWS = [
     ("minimum-flow", run(flow=0.0), FAIL),
     ("minimum-flow", run(flow=upset(0.01, duty=0.1)), PASS),  # duties only
     # thermal: P / (1000 * 4180 * 8) = 3.344 MW for 0.1 m3/s; here 0.0897, 0.0927, 0.1017
-    ("minimum-flow", rate(thermal_power=3.0e6), PASS),
-    ("minimum-flow", rate(thermal_power=3.1e6), CAUTION),
-    ("minimum-flow", rate(thermal_power=3.4e6), FAIL),
+    ("minimum-flow", bound(thermal_power=3.0e6), PASS),
+    ("minimum-flow", bound(thermal_power=3.1e6), CAUTION),
+    ("minimum-flow", bound(thermal_power=3.4e6), FAIL),
     ("minimum-flow", rate(minimum_flow=NAN), NOT_ASSESSED),
-    ("minimum-flow", rate(thermal_power=NAN), NOT_ASSESSED),
-    ("minimum-flow", rate(thermal_power=NAN) | run(flow=0.0299), FAIL),
-    ("minimum-flow", rate(minimum_flow=NAN, thermal_power=3.4e6), FAIL),
-    ("minimum-flow", rate(minimum_flow=NAN, thermal_power=NAN) | run(flow=0.0), FAIL),
+    ("minimum-flow", bound(thermal_power=NAN), NOT_ASSESSED),
+    ("minimum-flow", bound(thermal_power=NAN) | run(flow=0.0299), FAIL),
+    ("minimum-flow", bound(minimum=NAN, thermal_power=3.4e6), FAIL),
+    ("minimum-flow", bound(minimum=NAN, thermal_power=NAN) | run(flow=0.0), FAIL),
     # of 55 kW: 90.9, 91.1, 100.2 %
     ("motor-installed", run(power=50.0e3), PASS),
     ("motor-installed", run(power=50.1e3), CAUTION),
@@ -184,6 +190,12 @@ ROWS = [
     ("suction-specific-speed", pump(suction_specific_speed=213.1), CAUTION),
     ("trim-from-test", pump(from_test=0.049), PASS),
     ("trim-from-test", pump(from_test=0.051), CAUTION),
+    # type number n_q / 52.919: 1.4985, 1.5023; only where the rule with the inlet diameter cuts
+    ("trim-law", pump(from_test=0.02, specific_speed=79.3), PASS),
+    ("trim-law", pump(from_test=0.02, specific_speed=79.5), CAUTION),
+    ("trim-law", pump(from_test=0.02, specific_speed=NAN), NOT_ASSESSED),
+    ("trim-law", pump(from_test=0.0, specific_speed=79.5), PASS),
+    ("trim-law", pump(from_test=0.02, specific_speed=79.5, law_inlet=0.0), PASS),
     # of 0.41 m; offered down to 0.33 m, which is above 80 %, 0.328 m
     ("trim-range", pump(diameter=0.41), PASS),
     ("trim-range", pump(diameter=0.33), PASS),
@@ -192,6 +204,11 @@ ROWS = [
     # no minimum stated: 75 % is 0.3075 m, caution below 0.328 m
     ("trim-range", pump(diameter=0.3285, minimum=NAN), PASS),
     ("trim-range", pump(diameter=0.3275, minimum=NAN), CAUTION),
+    # from the minimum flow on, 4.9 or 5.1 % of the speed is left
+    ("speed-range", run(least_speed=0.949, opening_speed=0.9) | HELD, PASS),
+    ("speed-range", run(least_speed=0.951, opening_speed=0.9) | HELD, CAUTION),
+    ("speed-range", run(least_speed=NAN, opening_speed=0.9) | HELD, NOT_ASSESSED),
+    ("speed-range", run(least_speed=0.951, opening_speed=0.9), PASS),  # its speed holds no flow
     ("trim-range", pump(diameter=0.308, minimum=NAN), CAUTION),
     ("trim-range", pump(diameter=0.307, minimum=NAN), FAIL),
     # specific speed 48 to 77: caution below 90 %, 0.369 m

@@ -111,7 +111,7 @@ def test_criteria_of_the_candidate_alone_name_no_state(found) -> None:
     ("name", "changes"),
     [
         pytest.param("motor-new", {"ratings": {"motor": INF}}),
-        pytest.param("curve-end", {"run": {"flow": [-INF, NAN, NAN]}, "ratings": {"start": 0.05}}),
+        pytest.param("curve-end", {"run": {"flow": [-INF, NAN, NAN]}, "bounds": {"start": 0.05}}),
         ("curve-end", {"run": {"flow": [NAN, INF, NAN]}}),
     ],
 )

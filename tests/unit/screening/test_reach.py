@@ -2,16 +2,17 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from screener.catalog.compile import compile_table
 from screener.catalog.entry import Entry, TestedCurve
-from screener.header.requirement import Requirement
 from screener.model.arrays import frozen
-from screener.model.case import Branch, NewPump
+from screener.model.case import Branch, Drive, NewPump
 from screener.model.curves import PumpTable
-from screener.screening.reach import Reason, reach, smallest_diameters, speed_ratios
+from screener.screening.reach import Need, Reason, reach, smallest_diameters, speed_ratios
 
 NAN = np.nan
 
@@ -32,11 +33,7 @@ def place(frequency: float = NAN, slip: float = NAN) -> NewPump:
     return NewPump(1, frequency, slip, Branch(), 0.001, "IEC")
 
 
-def need(flow: float, head: float) -> Requirement:
-    return Requirement(header=head, supplied=0.1, flow=flow, head=head, past=-1)
-
-
-NEED = need(0.05, 30.0)  # every curve below falls by 4000 * 0.05^2 = 10 m to there
+NEED = Need(0.05, 30.0)  # every curve below falls by 4000 * 0.05^2 = 10 m to there
 
 REASONS = {
     Reason.REACHES: entry(curve(0.2, 50.0), minimum=0.16),
@@ -49,7 +46,8 @@ REASONS = {
 
 def test_each_reason() -> None:
     found = reach(compile_table(list(REASONS.values())), [NEED], place(frequency=50))
-    assert [Reason(code) for code in found.reason] == list(REASONS) == list(Reason)
+    assert [Reason(code) for code in found.reason] == list(REASONS)
+    assert [*REASONS, Reason.TOO_VISCOUS] == list(Reason)
     # at the largest diameter: given, and what the duty needs
     np.testing.assert_allclose(found.head, [40, 29, NAN, 50, 40], rtol=1e-12)
     assert found.needed.tolist() == [30.0] * 5
@@ -63,13 +61,13 @@ def test_the_first_thing_in_the_way_is_named() -> None:
     low_and_wrong = entry(curve(0.2, 39.0), speed=1180.0)
     short = entry(curve(0.2, 50.0, end=0.04))
     table = compile_table([low_and_wrong, short])
-    found = reach(table, [need(0.03, 60.0), NEED], place(frequency=50))
+    found = reach(table, [Need(0.03, 60.0), NEED], place(frequency=50))
     assert [Reason(code) for code in found.reason] == [Reason.WRONG_SPEED, Reason.HEAD_TOO_LOW]
 
 
 def test_the_duty_with_the_least_head_to_spare_is_shown() -> None:
     table = compile_table([entry(curve(0.2, 50.0))])
-    found = reach(table, [need(0.02, 30.0), need(0.05, 36.0), need(0.06, 30.0)], place())
+    found = reach(table, [Need(0.02, 30.0), Need(0.05, 36.0), Need(0.06, 30.0)], place())
     # given 48.4, 40, 35.6: 161, 111 and 119 % of what is needed
     assert (found.flow[0], found.needed[0], found.head[0]) == (0.05, 36.0, pytest.approx(40.0))
 
@@ -84,7 +82,7 @@ def test_the_smallest_diameter_of_one_test_in_closed_form() -> None:
 def test_the_smallest_diameter_against_a_scan() -> None:
     small, large = curve(0.18, 40.0, bend=3500.0), curve(0.2, 50.0, bend=4200.0, end=0.09)
     table = compile_table([entry(small, large, minimum=0.15, maximum=0.21)])
-    duties = [need(0.05, 32.0), need(0.03, 36.5), need(0.02, 37.0)]
+    duties = [Need(0.05, 32.0), Need(0.03, 36.5), Need(0.02, 37.0)]
 
     def given(diameter: float, flow: float) -> float:
         """Both tests brought to the diameter, mixed in diameter."""
@@ -105,7 +103,7 @@ def test_the_smallest_diameter_is_never_under_what_is_offered() -> None:
 
 def test_nothing_asked_is_always_reached() -> None:
     table = compile_table([entry(curve(0.2, 50.0), minimum=0.16), entry(curve(NAN, 50.0))])
-    for needs in ([], [need(0.0, 30.0)], [need(NAN, NAN)]):
+    for needs in ([], [Need(0.0, 30.0)], [Need(NAN, NAN)]):
         found = reach(table, needs, place())
         assert [Reason(code) for code in found.reason] == [Reason.REACHES] * 2
         np.testing.assert_allclose(found.wanted, [0.16, NAN], rtol=1e-8)
@@ -163,3 +161,36 @@ def test_the_speed_at_load(frequency: float, speed: float, runs: bool, at_two_pe
     assert (ratio[0], known[0]) == (1.0, runs)  # no slip stated: the curve's own speed
     ratio, known = speed_ratios(speeds(speed), place(frequency=frequency, slip=0.02))
     assert (ratio[0] * speed, known[0]) == (pytest.approx(at_two_percent), runs)
+
+
+def test_a_pump_of_variable_speed_may_run_faster_or_slower() -> None:
+    # 39 m at shutoff is too low at its speed; 5 % faster it gives 39 * 1.1025 - 10 = 33.0 m of the 30
+    table = compile_table([REASONS[Reason.HEAD_TOO_LOW], REASONS[Reason.TOO_LARGE]])
+    drive = Drive(lowest=0.8, highest=1.05)
+    held = Need(0.05, 30.0, held=True)
+    varied = reach(table, [held], replace(place(), drive=drive))
+    assert [Reason(code) for code in varied.reason] == [Reason.REACHES, Reason.REACHES]
+    fixed = reach(table, [NEED], replace(place(), drive=drive))  # that duty is throttled
+    assert [Reason(code) for code in fixed.reason] == [Reason.HEAD_TOO_LOW, Reason.TOO_LARGE]
+
+
+def test_a_range_of_the_model_narrows_that_of_the_drive() -> None:
+    drive, held = Drive(lowest=0.8, highest=1.05), Need(0.05, 30.0, held=True)
+    table = compile_table([replace(REASONS[Reason.HEAD_TOO_LOW], lowest_speed=1200.0, highest_speed=1450.0)])
+    assert reach(table, [held], replace(place(), drive=drive)).reason[0] == Reason.HEAD_TOO_LOW
+
+
+def test_a_viscous_liquid_asks_for_more_water_head() -> None:
+    # BEP 180 m3/h, 40 m at 1450 rpm and 100 cSt: B = 16.5 * 10 * 40^.0625 / (180^.375 * 1450^.25) = 4.80,
+    # C_Q = C_BEP-H = 2.71^(-0.165 * 0.6815^3.15) = 0.9521
+    flow = np.linspace(0, 0.08, 9)
+    eta = frozen(0.8 * (1 - ((flow - 0.05) / 0.05) ** 2))
+    given = replace(curve(0.2, 50.0), efficiency=eta, bep_flow=0.05)
+    table = compile_table([entry(given, minimum=0.16)])
+    factor = 2.71 ** (-0.165 * np.log10(165 * 40**0.0625 / (180**0.375 * 1450**0.25)) ** 3.15)
+    water_flow = 0.05 / factor
+    limit = (1 - (1 - factor) * (water_flow / 0.05) ** 0.75) * (50 - 4000 * water_flow**2)
+    for head, reason in ((0.999 * limit, Reason.REACHES), (1.001 * limit, Reason.HEAD_TOO_LOW)):
+        found = reach(table, [Need(0.05, head, viscosity=100e-6)], place())
+        assert found.reason[0] == reason
+    assert reach(table, [Need(0.05, 20.0, viscosity=5000e-6)], place()).reason[0] == Reason.TOO_VISCOUS

@@ -118,7 +118,7 @@ def test_a_vessel_pressure_counts_as_head(plant, duty) -> None:
 
 
 def test_who_holds_the_flow(plant, duty) -> None:
-    throttled, open_ = (states(plant(duty((0, 1), control=control))) for control in Control)
+    throttled, open_, held = (states(plant(duty((0, 1), control=control))) for control in Control)
     assert [(s.kind.name, s.throttled) for s in throttled] == [
         ("DUTY", True),
         ("WIDE_OPEN", False),
@@ -126,6 +126,13 @@ def test_who_holds_the_flow(plant, duty) -> None:
     ]
     # an open duty is wide open already
     assert [(s.kind.name, s.throttled) for s in open_] == [("DUTY", False), ("TRIP", False)]
+    # where speed holds the flow, upsets find the pumps at their highest speed
+    assert [(s.kind.name, s.speed.name) for s in held] == [
+        ("DUTY", "HELD"),
+        ("WIDE_OPEN", "HIGHEST"),
+        ("TRIP", "HIGHEST"),
+    ]
+    assert {s.speed.name for s in (*throttled, *open_)} == {"AT_LOAD"}
 
 
 def test_without_a_new_pump_only_the_duty_itself(plant, duty) -> None:

@@ -25,7 +25,7 @@ SHOWN = {"flow": "m3/h", "head": "m", "npsh": "m", "power": "kW", "length": "mm"
 def test_each_mark(make_run, flow: float, header: float, text: str, value: float | None) -> None:
     run = make_run(
         run={"flow": flow, "header": header},
-        ratings={"header_shutoff": 50.0, "end": 0.3, "start": 0.05},
+        bounds={"opening": 50.0, "end": 0.3, "start": 0.05},
     )
     cell = flow_cell(Display(SHOWN), run, 0, 0)
     assert (cell.text, cell.value) == (text, value)
