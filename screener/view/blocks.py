@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 from enum import IntEnum
 
@@ -79,10 +79,99 @@ class Table:
 Block = Heading | Lines | Pairs | Table
 
 
+class Role(IntEnum):
+    """What a series of a chart stands for; its colour, line and mark follow from it alone."""
+
+    NEW = 0
+    NEW_ASIDE = 1
+    INSTALLED = 2
+    RESTORED = 3
+    COMBINED = 4
+    SYSTEM = 5
+    DUTY = 6
+    TRIP = 7
+    LIMIT = 8
+    BAND = 9
+
+
+class Mark(IntEnum):
+    """How a series is drawn."""
+
+    LINE = 0
+    POINTS = 1
+    AREA = 2
+    UPRIGHT = 3
+
+
+@dataclass(frozen=True, slots=True)
+class Series:
+    """One series: x and y of equal length, in the units of the axes; None breaks a line.
+
+    AREA fills between `y` and `low`; UPRIGHT draws a line over the whole height at each x.
+    label : written at the series itself where it fits; labels : one for each point, or empty
+    """
+
+    label: str
+    role: Role
+    mark: Mark
+    x: Sequence[float | None]
+    y: Sequence[float | None] = ()
+    low: Sequence[float | None] = ()
+    labels: Sequence[str] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Axis:
+    """Title of an axis, and its unit ("" where none)."""
+
+    title: str
+    unit: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Panel:
+    """One of several plots under each other over the same x axis; `height` is relative."""
+
+    y: Axis
+    series: Sequence[Series]
+    height: float = 1.0
+
+
+@dataclass(frozen=True, slots=True)
+class Chart:
+    """One chart, free of any library.
+
+    key : name of it in file names and sheets;  note : what a reader must know;  told : what it shows, in
+    words, for those who cannot see it
+    """
+
+    key: str
+    title: str
+    x: Axis
+    panels: Sequence[Panel]
+    note: str = ""
+    told: str = ""
+
+
+def no_charts() -> Sequence[Chart]:
+    """For screens that have none."""
+    return ()
+
+
+def no_sheets() -> Sequence[tuple[str, Table]]:
+    """For screens whose tables all stand in their blocks."""
+    return ()
+
+
 @dataclass(frozen=True, slots=True)
 class Screen:
-    """One result as blocks, with the one table that a csv holds, and the whole of it as plain data."""
+    """One result as blocks, with the one table that a csv holds, and the whole of it as plain data.
+
+    charts, sheets : made only by the outputs that want them: charts, and further tables by name
+    """
 
     blocks: Sequence[Block]
     table: Table
     data: dict[str, object]
+    charts: Callable[[], Sequence[Chart]] = no_charts
+    sheets: Callable[[], Sequence[tuple[str, Table]]] = no_sheets
