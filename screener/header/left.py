@@ -22,6 +22,7 @@ from screener.model.arrays import Floats, Ints, frozen
 CELLS = 24
 _FAR_HEAD = 1e5
 _FAR_FLOW = 100.0
+_AROUND = 4.0 ** -np.arange(1, 26, 2)
 
 
 @dataclass(frozen=True, slots=True)
@@ -193,14 +194,25 @@ def _with_jumps(pumps: BranchCurves, rows: Ints, heads: Floats) -> tuple[Floats,
 
 
 def _zero(rising: Callable[[Floats], Floats], low: float, high: float) -> float:
-    """The largest place in [low, high] at which a rising function is not above zero."""
-    for _ in range(12):
-        places = np.linspace(low, high, 25)
-        above = np.flatnonzero(rising(places) > 0)
+    """The largest place in [low, high] at which a rising function is not above zero.
+
+    Many places are looked at in each round: even ones first, then closer and closer to where a straight line
+    between the two nearest would cross zero.
+    """
+    places = np.linspace(low, high, 25)
+    for _ in range(40):
+        values = rising(places)
+        above = np.flatnonzero(values > 0)
         step = int(above[0]) if above.size else len(places) - 1
-        low, high = float(places[max(step - 1, 0)]), float(places[step])
+        before = max(step - 1, 0)
+        low, high = float(places[before]), float(places[step])
         if high - low <= 1e-15 * abs(high):
             break
+        under, over = float(values[before]), float(values[step])
+        guess = low + (high - low) * (under / (under - over) if under < 0 < over else 0.5)
+        near = (high - low) * _AROUND
+        inside = np.concatenate([guess - near, guess + near, [guess]])
+        places = np.unique(np.concatenate([[low, high], np.clip(inside, low, high)]))
     return low
 
 

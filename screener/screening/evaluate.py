@@ -111,28 +111,10 @@ def today(header: Header, *, replaced: bool = True) -> Run:
     flow = np.full((1, len(alone), 1 + installed), np.nan)
     flow[0, :, 1:] = [state.flow for state in alone]
     nobody = _nobody(header.case.pumps)
-    ratio = np.array([[1.0, *state.ratio] for state in alone])
-    groups = [
-        Group(
-            [column],
-            (
-                nobody,
-                *(
-                    pumps_at(
-                        take_pumps(header.case.pumps, np.array([row])),
-                        ratio=ratio[column, 1 + row : 2 + row],
-                        viscosity=standing.setting.viscosity,
-                    )
-                    for row in range(installed)
-                ),
-            ),
-            ratio[column : column + 1],
-            np.append(np.nan, standing.branches.shutoff)[None],
-            np.append(np.nan, summits(standing.pumps))[None],
-            np.append(np.nan, standing.thermal_power)[None],
-        )
-        for column, standing in enumerate(header.standing)
-    ]
+    same: dict[tuple[int, bytes], list[int]] = {}
+    for column, standing in enumerate(header.standing):
+        same.setdefault((id(standing), alone[column].ratio.tobytes()), []).append(column)
+    groups = [_group_alone(header, columns, nobody, alone[columns[0]].ratio) for columns in same.values()]
     head = np.array([[state.header for state in alone]])
     result = _figures(header, nobody, header.case.new_pump.branch, groups, flow, head)
     unknown = np.full((1, installed), np.nan)
@@ -149,6 +131,21 @@ def today(header: Header, *, replaced: bool = True) -> Run:
         spare_head=np.full((1, 1 + installed), np.nan),
         shutoff_match=unknown,
         load_share=unknown,
+    )
+
+
+def _group_alone(header: Header, columns: list[int], nobody: Pumps, ratio: Floats) -> Group:
+    """States in which the installed pumps stand at the same setting and speeds, without the new one."""
+    standing = header.standing[columns[0]]
+    pumps = pumps_at(header.case.pumps, ratio=ratio, viscosity=standing.setting.viscosity)
+    rows = (take_pumps(pumps, np.array([row])) for row in range(len(pumps)))
+    return Group(
+        columns,
+        (nobody, *rows),
+        np.append(1.0, ratio)[None],
+        np.append(np.nan, standing.branches.shutoff)[None],
+        np.append(np.nan, summits(standing.pumps))[None],
+        np.append(np.nan, standing.thermal_power)[None],
     )
 
 
@@ -285,9 +282,9 @@ def figures(
     head: Floats,
     base: Fitted,
 ) -> Run:
-    """What known flows mean for each pump. flow : (c, s, 1 + p); head : (c, s); base : the candidates at load.
+    """What known flows mean for each pump: the run but for start headers, spare heads and how curves match.
 
-    Start headers, spare heads and how curves match are left to the caller.
+    flow : (c, s, 1 + p), marked as in `Run`;  head : (c, s);  base : the new pumps at load
     """
     result = _figures(header, pumps, place, groups, flow, head)
     own = ratings(base.pumps, base.branches, _nameplate(header, groups, result))
@@ -467,9 +464,26 @@ def _start_headers(
         for first in dict.fromkeys(int(header.alike[row]) for row in state.running if state.new):
             row = next(row for row in state.running if header.alike[row] == first)
             rest = tuple(other for other in state.running if other != row)
-            others = _hold(header, column, pumps, place, fitted, rest, without=row)[0]
+            others = _held_at_most(
+                header, column, fitted, *_hold(header, column, pumps, place, fitted, rest, row)
+            )
             _of_kind(header, column, row, others, result)
     return result
+
+
+def _held_at_most(
+    header: Header,
+    column: int,
+    fitted: Callable[[Setting], Fitted],
+    head: Floats,
+    flow: Floats,
+    speed: Floats,
+) -> Floats:
+    """Header head, or, where a pump is past its data, the head at its end: it is lower yet."""
+    standing = header.standing[column]
+    ends = _beside_one(fitted(standing.setting).branches.end_head, standing.branches.end_head) * speed**2
+    past = np.where(np.isposinf(flow), ends, np.inf).min(axis=1)
+    return np.where(np.isnan(head) & np.isfinite(past), past, head)
 
 
 def _of_kind(header: Header, column: int, row: int, others: Floats, result: Floats) -> None:
