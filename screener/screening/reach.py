@@ -71,7 +71,10 @@ def reach(table: PumpTable, needs: Sequence[Need], place: NewPump) -> Reach:
 
     Where the flow asked lies left of a curve's first measured point nothing is said against the model: the
     states will tell. Viscosity is looked at last, for those that would do with water.
+    ValueError: the table was not made for the trim law of the case.
     """
+    if place.trim_law and place.trim_law != table.trim_law:
+        raise ValueError(f"the case trims by {place.trim_law!r}: read the catalog with that trim_law")
     count = len(table)
     model = np.arange(count)
     ratio, runs = speed_ratios(table, place)

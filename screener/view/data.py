@@ -11,8 +11,10 @@ import numpy as np
 from screener import ranking, units
 from screener.criteria import criteria
 from screener.model.case import Case, WearFit
+from screener.model.curves import PumpTable
 from screener.model.finding import Candidates, Outcome, Verdict
 from screener.model.run import Kind, Run, in_state
+from screener.model.tables.trim_laws import ISO_9906
 from screener.screening.assess import Bench
 from screener.screening.reach import Reason
 from screener.screening.shortlist import Shortlist
@@ -310,6 +312,17 @@ def _speed(bench: Bench, run: Run, place: int, column: int) -> float:
 
 def _percent(value: float) -> float | None:
     return tidy(100 * float(value)) if np.isfinite(value) else None
+
+
+def trim_law_in_force(table: PumpTable) -> list[str]:
+    """What must be said of a catalog that the case puts under one trim law; nothing where it does not."""
+    if not table.trim_law:
+        return []
+    lines = [f"Every pump is trimmed by the law of the case: {table.trim_law}."]
+    keep = int(np.sum(table.law_inlet == 0))
+    if table.trim_law == ISO_9906 and keep:
+        lines.append(f"{keep} of {len(table)} state no inlet diameter for it and keep their own law.")
+    return lines
 
 
 def rows(items: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:

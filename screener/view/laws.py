@@ -10,9 +10,8 @@ import numpy as np
 from screener.catalog.entry import Entry
 from screener.changes.laws import ByLaw
 from screener.model.arrays import Floats
-from screener.model.curves import PumpTable
 from screener.model.finding import Verdict
-from screener.model.tables.trim_laws import AFFINITY, EQUAL_EXPONENTS, ISO_9906
+from screener.model.tables.trim_laws import AFFINITY, EQUAL_EXPONENTS
 from screener.view.blocks import Block, Cell, Column, Heading, Table
 from screener.view.data import VERDICTS
 from screener.view.display import Display, word
@@ -62,17 +61,6 @@ def laws_data(result: ByLaw, display: Display) -> list[dict[str, Any]]:
         }
         for row, entry in enumerate(result.entries)
     ]
-
-
-def in_force(table: PumpTable) -> list[str]:
-    """What must be said of a catalog that the case puts under one trim law; nothing where it does not."""
-    if not table.trim_law:
-        return []
-    lines = [f"Every pump is trimmed by the law of the case: {table.trim_law}."]
-    keep = int(np.sum(table.law_inlet == 0))
-    if table.trim_law == ISO_9906 and keep:
-        lines.append(f"{keep} of {len(table)} state no inlet diameter for it and keep their own law.")
-    return lines
 
 
 def name(entry: Entry) -> str:

@@ -197,7 +197,7 @@ def _references_fail(result: Shortlist, display: Display) -> list[str]:
 def _notes(result: Shortlist, display: Display) -> list[str]:
     """What a reader must know about the basis of the ranking."""
     case = result.bench.header.case
-    notes = _worn(result, display)
+    notes = [*_worn(result, display), *data.trim_law_in_force(result.table)]
     if any(np.isnan(duty.hours) for duty in case.duties):
         notes.append(
             "Not every duty states its hours: duties are weighted equally, and no energy per year is given."

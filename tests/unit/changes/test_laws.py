@@ -18,8 +18,9 @@ from screener.screening.assess import Bench, set_up
 from screener.screening.one import trims
 from screener.screening.shortlist import requirements
 from screener.view.blocks import Heading, Table
+from screener.view.data import trim_law_in_force
 from screener.view.display import Display
-from screener.view.laws import in_force, laws, laws_data
+from screener.view.laws import laws, laws_data
 
 AFFINITY, EQUAL, ISO = NAMES
 STEPS = np.array([0.39, 0.40, 0.41])
@@ -137,11 +138,11 @@ def test_a_pump_without_a_diameter_has_no_laws_to_show(bench: Bench) -> None:
 
 def test_what_is_said_of_a_catalog_under_the_law_of_the_case() -> None:
     pumps = [pump(), pump(inlet_diameter=np.nan), pump(inlet_diameter=np.nan)]
-    assert in_force(compile_table(pumps)) == []
-    assert in_force(compile_table(pumps, trim_law=EQUAL)) == [
+    assert trim_law_in_force(compile_table(pumps)) == []
+    assert trim_law_in_force(compile_table(pumps, trim_law=EQUAL)) == [
         "Every pump is trimmed by the law of the case: equal exponents."
     ]
-    assert in_force(compile_table(pumps, trim_law=ISO))[1:] == [
+    assert trim_law_in_force(compile_table(pumps, trim_law=ISO))[1:] == [
         "2 of 3 state no inlet diameter for it and keep their own law."
     ]
-    assert len(in_force(compile_table(pumps[:1], trim_law=ISO))) == 1
+    assert len(trim_law_in_force(compile_table(pumps[:1], trim_law=ISO))) == 1

@@ -194,3 +194,9 @@ def test_a_viscous_liquid_asks_for_more_water_head() -> None:
         found = reach(table, [Need(0.05, head, viscosity=100e-6)], place())
         assert found.reason[0] == reason
     assert reach(table, [Need(0.05, 20.0, viscosity=5000e-6)], place()).reason[0] == Reason.TOO_VISCOUS
+
+
+def test_a_table_under_another_trim_law_is_refused() -> None:
+    table = compile_table([REASONS[Reason.REACHES]])
+    with pytest.raises(ValueError, match="trims by 'equal exponents'"):
+        reach(table, [NEED], replace(place(), trim_law="equal exponents"))
