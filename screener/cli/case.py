@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import shlex
+from collections.abc import Sized
 from pathlib import Path
 from typing import Annotated
 
@@ -32,10 +33,9 @@ def check(
 
     loaded = load(file, catalog or ())
     found = loaded.case
-    typer.echo(
-        f"{len(found.installed)} pumps installed, {len(found.duties)} duties, {len(found.levels)} levels, "
-        f"{len(loaded.catalog)} pumps in the catalog: no problem found"
-    )
+    duties = "1 duty" if len(found.duties) == 1 else f"{len(found.duties)} duties"
+    parts = [_many(found.installed, "pump") + " installed", duties, _many(found.levels, "level")]
+    typer.echo(f"{', '.join(parts)}, {_many(loaded.catalog, 'pump')} in the catalog: no problem found")
 
 
 @app.command()
@@ -60,3 +60,7 @@ def new(
     for path in items:
         typer.echo(f"wrote {path}")
     typer.echo(f"try: screener shortlist {shlex.quote(str(folder / 'case.toml'))}")
+
+
+def _many(items: Sized, word: str) -> str:
+    return f"1 {word}" if len(items) == 1 else f"{len(items)} {word}s"

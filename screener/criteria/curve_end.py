@@ -17,7 +17,7 @@ def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     return Observed(
         value,
         run.conditions.runs & np.ones_like(value, bool),
-        fail_below=np.where(first > 0, first, -np.inf),
+        fail_below=np.where(first > 0, first, 0.0),  # no curve at all is below that
         fail_above=limits["fail_above"],
         caution_above=limits["caution_above"],
     )

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
+import numpy as np
+
 from screener.criteria import Criterion, Limit, Observed, per_state
 from screener.model.run import Run
 
@@ -11,7 +13,7 @@ from screener.model.run import Run
 def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     """Flow of the new pump at the rated duty, over its flow of best efficiency."""
     value = (run.flow[:, :, 0] / run.bounds.best[:, :, 0])[:, :, None]
-    return Observed(value, per_state(run.conditions.rated), **limits)
+    return Observed(np.where(np.isinf(value), np.nan, value), per_state(run.conditions.rated), **limits)
 
 
 CRITERION = Criterion(

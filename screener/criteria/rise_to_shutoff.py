@@ -9,8 +9,9 @@ from screener.model.run import Run
 
 
 def observe(run: Run, limits: Mapping[str, float]) -> Observed:
-    """Shutoff head over the head at the rated duty, less one."""
-    value = (run.ratings.shutoff[:, :1] / run.head[:, :, 0] - 1)[:, :, None]
+    """Shutoff head over the head at the rated duty, less one, both at the speed of that duty."""
+    shutoff = run.ratings.shutoff[:, :1] * run.bounds.speed[:, :, 0] ** 2
+    value = (shutoff / run.head[:, :, 0] - 1)[:, :, None]
     return Observed(value, per_state(run.conditions.rated), **limits)
 
 

@@ -65,7 +65,7 @@ def load_share(
     result = np.full((len(new), len(installed)), np.nan)
     flows = branch.flow_at(new, np.arange(len(new)), np.stack([rated_head, low_head, high_head]))
     sound = np.isfinite(flows[0]) & (flows[0] > 0) & np.isfinite(flows[2])
-    rows = np.flatnonzero((high_head > low_head) & sound)
+    rows = np.flatnonzero((high_head > low_head * (1 + 1e-9)) & sound)
     own_rated, most, least = flows[:, rows]
     rated_head, low_head, high_head = rated_head[rows], low_head[rows], high_head[rows]
     flow = least[:, None] + (np.minimum(most, new.end[rows]) - least)[:, None] * np.linspace(0, 1, _HEADS)

@@ -90,8 +90,8 @@ def reach(table: PumpTable, needs: Sequence[Need], place: NewPump) -> Reach:
         slow, fast = _speeds(table, place, ratio, held=need.held)
         at = np.full(count, need.flow)
         given = head_at(table, model=model, diameter=most, speed_ratio=fast, flow=at)
-        ratio_given = given / need.head
-        worse = ~(ratio_given >= shortest)
+        ratio_given = np.nan_to_num(given / need.head, nan=-1.0)  # no head there is worst
+        worse = ratio_given < shortest
         head, needed_head = np.where(worse, given, head), np.where(worse, need.head, needed_head)
         flow, shortest = np.where(worse, need.flow, flow), np.where(worse, ratio_given, shortest)
         code = np.where(
@@ -107,8 +107,11 @@ def reach(table: PumpTable, needs: Sequence[Need], place: NewPump) -> Reach:
     asked = []
     for need in duties:
         fast = _speeds(table, place, ratio, held=need.held)[1][rows]
-        at_flow, at_head, code = _with_water(table, rows, most[rows], fast, need)
-        reason[rows] = np.where(reason[rows] == Reason.REACHES, code, reason[rows])
+        at_flow, at_head, given, code = _with_water(table, rows, most[rows], fast, need)
+        first = (reason[rows] == Reason.REACHES) & (code != Reason.REACHES)
+        reason[rows[first]] = code[first]
+        head[rows[first]], needed_head[rows[first]] = given[first], need.head
+        flow[rows[first]] = need.flow
         asked.append((at_flow, at_head, fast))
     wanted = np.full(count, np.nan)
     able = (reason[rows] == Reason.REACHES) & ~np.isnan(most[rows])
@@ -131,12 +134,14 @@ def _speeds(table: PumpTable, place: NewPump, ratio: Floats, *, held: bool) -> t
 
 def _with_water(
     table: PumpTable, rows: Ints, diameter: Floats, speed_ratio: Floats, need: Need
-) -> tuple[Floats, Floats, Codes]:
-    """Flow [m3/s] and head [m] that some models must give with water, and whether they do; (r,) each."""
+) -> tuple[Floats, Floats, Floats, Codes]:
+    """Flow [m3/s] and head [m] that some models must give with water, the head [m] that they give in the
+    liquid, and whether that is enough; (r,) each.
+    """
     code = np.full(len(rows), Reason.REACHES, np.int8)
     flow, head = np.full(len(rows), need.flow), np.full(len(rows), need.head)
     if not need.viscosity or not rows.size:
-        return flow, head, code
+        return flow, head, head, code
     factor = factors(
         trimmed(table, model=rows, diameter=diameter, speed_ratio=speed_ratio), viscosity=need.viscosity
     )
@@ -148,7 +153,7 @@ def _with_water(
     code[given < head] = Reason.HEAD_TOO_LOW
     code[flow > end] = Reason.CURVE_TOO_SHORT
     code[factor.cover != Cover.COVERED] = Reason.TOO_VISCOUS
-    return flow, head, code
+    return flow, head, given * need.head / head, code
 
 
 def smallest_diameters(table: PumpTable) -> Floats:

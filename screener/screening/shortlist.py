@@ -10,6 +10,7 @@ import numpy as np
 from screener.header.requirement import Requirement, requirement
 from screener.hydraulics.similarity import take as take_pumps
 from screener.hydraulics.similarity import trimmed
+from screener.hydraulics.viscosity import corrected
 from screener.model.arrays import Bools, Floats, Ints
 from screener.model.case import Case
 from screener.model.curves import PumpTable
@@ -19,6 +20,7 @@ from screener.screening.assess import Bench, assess, join, judged, restored, set
 from screener.screening.judge import inherited
 from screener.screening.ratings import efficiency_at
 from screener.screening.reach import Need, Reach, Reason, reach
+from screener.screening.states import classes
 
 LADDER = 12
 """Diameters of each model looked at first, from the smallest that meets the duties to the largest."""
@@ -77,14 +79,14 @@ def shortlist(case: Case, catalog: PumpTable, *, progress: Progress | None = Non
     best = take(finalists, _best(finalists))
     best = take(best, np.lexsort((best.model, _merit(best), best.verdict)))
     restored_best, restored_total = _restored(case, catalog, found, best)
-    same_as = tuple(dict.fromkeys(int(row) for row in bench.header.alike))
+    same_as = tuple(dict.fromkeys(int(row) for row in classes(restored(case))))
     return Shortlist(
         bench=bench,
         table=catalog,
         needs=needs,
         reach=found,
         best=best,
-        duty_efficiency=_duty_efficiency(catalog, found, best, needs[bench.header.rated].flow),
+        duty_efficiency=_duty_efficiency(bench, catalog, found, best, needs[bench.header.rated].flow),
         restored=restored_best,
         restored_total=restored_total,
         screened=len(first) + len(second),
@@ -142,11 +144,11 @@ def _restored(
     return again, float(bench.today.total[0, bench.header.rated])
 
 
-def _duty_efficiency(catalog: PumpTable, found: Reach, best: Candidates, flow: float) -> Floats:
+def _duty_efficiency(bench: Bench, catalog: PumpTable, found: Reach, best: Candidates, flow: float) -> Floats:
     speed_ratio = found.speed_ratio[best.model]
-    return efficiency_at(
-        trimmed(catalog, model=best.model, diameter=best.diameter, speed_ratio=speed_ratio), flow
-    )
+    pumps = trimmed(catalog, model=best.model, diameter=best.diameter, speed_ratio=speed_ratio)
+    viscosity = bench.header.base.setting.viscosity
+    return efficiency_at(corrected(pumps, viscosity=viscosity) if viscosity else pumps, flow)
 
 
 def _assess(

@@ -37,6 +37,8 @@ CANDIDATE_KEYS = (
     "efficiency_at_duty",
     "restored_verdict",
     "restored_score",
+    "restored_shutoff_match",
+    "restored_load_share",
     "score",
     "efficiency",
     "power",
@@ -125,10 +127,15 @@ def candidate(result: Shortlist, display: Display, row: int) -> dict[str, Any]:
 def _restored(result: Shortlist, row: int) -> dict[str, Any]:
     """The same candidate beside installed pumps as new; None where none is worn."""
     if result.restored is None:
-        return {"restored_verdict": None, "restored_score": None}
+        return dict.fromkeys(
+            ("restored_verdict", "restored_score", "restored_shutoff_match", "restored_load_share")
+        )
+    figures = result.restored.figures
     return {
         "restored_verdict": VERDICTS[Verdict(int(result.restored.verdict[row]))],
-        "restored_score": tidy(float(result.restored.figures.score[row])),
+        "restored_score": tidy(float(figures.score[row])),
+        "restored_shutoff_match": _percent(figures.shutoff[row]),
+        "restored_load_share": _percent(figures.share[row]),
     }
 
 
@@ -312,6 +319,13 @@ def _speed(bench: Bench, run: Run, place: int, column: int) -> float:
 
 def _percent(value: float) -> float | None:
     return tidy(100 * float(value)) if np.isfinite(value) else None
+
+
+def energy_words(case: Case) -> str:
+    """What energies are: at the shafts, or drawn where the efficiency of a motor or drive is stated."""
+    drives = [case.new_pump.drive, *(pump.drive for pump in case.installed)]
+    stated = any(drive.motor_efficiency * drive.drive_efficiency != 1 for drive in drives)
+    return "energy drawn" if stated else "shaft energy"
 
 
 def trim_law_in_force(table: PumpTable) -> list[str]:

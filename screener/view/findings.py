@@ -58,6 +58,8 @@ def found(bench: Bench, display: Display, findings: Findings, row: int) -> list[
     for column, criterion in enumerate(criteria()):
         state, pump = int(findings.state[row, column]), int(findings.pump[row, column])
         observed = float(findings.observed[row, column])
+        outside = findings.outcome[row, column] in (Outcome.FAIL, Outcome.CAUTION)
+        finer = outside and _alike(criterion, display, observed, float(findings.limit[row, column]))
         end = bench.header.standing[state].branches.end[pump - 1] if pump > 0 and state >= 0 else np.nan
         result.append(
             Found(
@@ -65,8 +67,8 @@ def found(bench: Bench, display: Display, findings: Findings, row: int) -> list[
                 outcome=Outcome(int(findings.outcome[row, column])),
                 value=past_end(display, end)
                 if np.isposinf(observed) and criterion.name == "curve-end"
-                else amount(criterion, display, observed),
-                limit=_limit(criterion, display, findings, row, column),
+                else amount(criterion, display, observed, finer=finer),
+                limit=_limit(criterion, display, findings, row, column, finer=finer),
                 shortfall=float(findings.shortfall[row, column]),
                 pump=names.pump(case, pump) if pump >= 0 else "",
                 where=names.where(case, states[state]) if state >= 0 else "",
@@ -77,10 +79,17 @@ def found(bench: Bench, display: Display, findings: Findings, row: int) -> list[
     return result
 
 
-def _limit(criterion: Criterion, display: Display, findings: Findings, row: int, column: int) -> Cell:
+def _alike(criterion: Criterion, display: Display, observed: float, limit: float) -> bool:
+    """Whether a value outside its limit would read as the limit itself."""
+    return amount(criterion, display, observed).text == amount(criterion, display, limit).text
+
+
+def _limit(
+    criterion: Criterion, display: Display, findings: Findings, row: int, column: int, *, finer: bool
+) -> Cell:
     """The limit, and whether it is the least or the most, by the side on which the value lies."""
     observed, limit = float(findings.observed[row, column]), float(findings.limit[row, column])
-    cell = amount(criterion, display, limit)
+    cell = amount(criterion, display, limit, finer=finer)
     if cell.value is None or np.isnan(observed):
         return cell
     outside = findings.outcome[row, column] in (Outcome.FAIL, Outcome.CAUTION)
@@ -95,10 +104,13 @@ def worst_first(items: list[Found]) -> list[Found]:
     )
 
 
-def amount(criterion: Criterion, display: Display, value: float) -> Cell:
-    """A value in the unit of its criterion."""
+def amount(criterion: Criterion, display: Display, value: float, *, finer: bool = False) -> Cell:
+    """A value in the unit of its criterion; `finer` with as many digits as it is kept with."""
     if not np.isfinite(value):
         return Cell("none" if np.isposinf(value) else DASH)
+    if finer:
+        kept = amount(criterion, display, value).value
+        return Cell(f"{kept:.7g}", kept)
     if criterion.unit == "%":
         near = 0 < abs(value - 1) < 0.002  # 99.87 is no 99.9
         return Cell(f"{100 * value:z.{2 if near else 1}f}", tidy(100 * value))
@@ -128,6 +140,8 @@ def _quantity(criterion: Criterion) -> str:
 def sentence(item: Found, display: Display, pump: str) -> str:
     """One finding as a clause; `pump` is what the new pump is called."""
     name = pump if item.pump in (names.NEW, "") else item.pump
+    if item.criterion.name == "curve-end" and item.limit.text.startswith("min"):
+        return f"{name} has no curve where it would run, {item.where}"
     if item.criterion.name == "curve-end" and item.value.value is None:
         return f"{name} runs past its last measured point, {item.where}"
     unit = unit_of(item.criterion, display)

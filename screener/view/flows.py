@@ -22,9 +22,9 @@ def flow_cell(display: Display, run: Run, place: int, column: int, row: int = 0)
             f"past {display.text('flow', in_state(run.bounds.end, place)[row, column])}", None, Tone.BAD
         )
     if np.isneginf(value):
-        return Cell(
-            f"below {display.text('flow', in_state(run.bounds.start, place)[row, column])}", None, Tone.BAD
-        )
+        start = float(in_state(run.bounds.start, place)[row, column])
+        # a measured curve that has no figures: the viscosity method does not cover the pump
+        return Cell(f"below {display.text('flow', start)}" if start else "no curve", None, Tone.BAD)
     if value == 0:
         opens = in_state(run.bounds.opening, place)[row, column] > run.header[row, place]
         return Cell("past peak" if opens else "shut", 0.0, Tone.BAD)

@@ -1,7 +1,10 @@
-"""Writes the invented pumps of the demo plant: python tests/demo/make_catalog.py catalogs/osier-bank/pumps.
+"""Writes the invented pumps of a demo plant: make_catalog.py osier-bank catalogs/osier-bank/pumps.
 
-It reads no case: every pump is a row picked by hand in `PUMPS`, plus scatter from one seed. Curves come from
-these relations; a statement without source is common practice.
+It reads no case: every pump is a row picked by hand in `plants/osier-bank.toml`, plus scatter from the seed
+there. Columns of a row: best flow [m3/h], head [m] and rise to shutoff [%] at the largest diameter (r:p
+droops: its peak is p % above shutoff); points over the efficiency relation; suction specific speed; largest
+and smallest diameter [mm]; tested diameters [mm]; last flow and stable minimum flow [% of best flow];
+remarks. Curves come from these relations; a statement without source is common practice.
   best efficiency   EU Regulation 547/2012, Annex III: the polynomial in specific speed and flow with its
                     constants C for MEI 0.40, raised or lowered by the points in the row. It covers neither
                     double suction, six poles nor vertical turbines: there the nearest C is taken, our choice.
@@ -20,12 +23,12 @@ import json
 import math
 import re
 import sys
+import tomllib
 from collections.abc import Iterator
 from pathlib import Path
 from random import Random
 from typing import Any, NamedTuple
 
-SEED = 1954
 GRAVITY = 9.80665
 NAMEPLATES = (7.5, 11, 15, 22, 30, 37, 45, 55, 75, 90, 110, 132, 160, 200, 250, 315, 400, 500, 630)  # kW
 
@@ -37,9 +40,10 @@ class Series(NamedTuple):
     eyes: int
     four_poles: int  # rpm at load
     pressure: int  # bar gauge
-    region: tuple[int, int] | None  # percent of best flow
     kind: str
-    grade: str | int  # acceptance grade, or head uncertainty in percent, or ""
+    region: tuple[int, int] | None = None  # percent of best flow
+    grade: str | int = ""  # acceptance grade, or head uncertainty in percent
+    turns: tuple[int, int] | None = None  # speeds allowed, percent of the speed at load
 
 
 class Units(NamedTuple):
@@ -53,20 +57,6 @@ class Units(NamedTuple):
     decimals: int | None = None
 
 
-SERIES = {
-    "P": Series("axially split", 2, 1480, 16, (45, 130), "shop test", "1B"),
-    "K": Series("axially split", 2, 1480, 16, (40, 125), "catalogue", "1B"),
-    "D": Series("axially split", 2, 1485, 16, (45, 125), "catalogue", "2B"),
-    "F": Series("axially split", 2, 1480, 10, (50, 125), "catalogue", "2B"),
-    "M": Series("end suction", 1, 1480, 10, (40, 130), "catalogue", "2B"),
-    "G": Series("end suction", 1, 1485, 16, (40, 125), "shop test", "1B"),
-    "S": Series("end suction", 1, 1480, 10, (45, 125), "catalogue", "3B"),
-    "B": Series("end suction", 1, 1470, 10, (45, 120), "field test", 4),
-    "H": Series("end suction", 1, 1485, 16, None, "catalogue", "2B"),
-    "L": Series("in line", 1, 1480, 10, (40, 125), "catalogue", "2B"),
-    "R": Series("multistage", 1, 1485, 25, (45, 120), "catalogue", "2U"),
-    "T": Series("vertical turbine", 1, 1480, 16, (60, 120), "assumed", ""),
-}
 CONSTANT_C = {"in line": (132.30, 133.69), "multistage": (133.95, 133.95)}  # four or six poles, two poles
 END_SUCTION_C = (128.07, 130.27)
 METRIC = Units({"flow": "m3/h", "head": "m", "npsh": "m", "power": "kW", "length": "mm", "volume": "L"})
@@ -78,147 +68,21 @@ US = Units(
     length=25.4,
     decimals=2,
 )
-FILES = {
-    "axially-split.json": ("Invented axially split pumps", "PKDF", METRIC),
-    "end-suction.json": ("Invented end suction pumps", "MGSBH", METRIC),
-    "in-line-and-multistage.json": ("Invented in-line and multistage pumps", "LR", METRIC),
-    "vertical-turbine.json": ("Invented vertical turbine pumps, in US units", "T", US),
-}
-
-# Best flow [m3/h], head [m] and rise to shutoff [%] at the largest diameter (r:p droops: its peak is p %
-# above shutoff); points over the efficiency relation; suction specific speed; largest and smallest diameter
-# [mm]; tested diameters [mm]; last flow and stable minimum flow [% of best flow]; remarks.
-PUMPS = """
-200-400-4 P  1196 35.95 33    1.5 195  405 330 405,370      150 26.6 volume best
-250-400-4 P  1500 38.0  30    1.0 190  406 335 406,375      140 28  volume
-150-315-4 P   620 26.0  27    1.0 190  328 265 328,300,275  135 30
-150-400-4 P   690 40.0  25    0.8 185  405 330 405          138 30  best
-250-500-4 P  1350 58.0  25    1.6 200  510 410 510,470      135 30  volume
-300-400-4 P  1900 36.0  33    1.2 195  408 335 408          130 32
-200-500-4 P   900 60.0  21    0.5 190  508 420 508          140 28  power
-250-315-4 P  1300 24.0  36    0.9 200  330 270 330,300      132 34
-300-500-6 P  1550 27.0  26    1.3 190  520 420 520          135 30
-300-560-6 P  1400 36.0  23    1.5 185  580 470 580,540      136 30  volume
-350-500-6 P  2300 26.0  29    1.6 200  525 430 525          128 33
-250-500-6 P  1020 29.0  23    0.9 190  515 420 515          140 28
-200-400-4 K   960 37.6  7.5   5.2 205  405 340 405,380      148 33  volume best
-250-400-4 K  1120 37.5  9     3.4 210  406 340 406          140 33  best
-150-400-4 K   640 41.0  8     4.0 200  404 335 404          138 32
-250-500-4 K  1300 55.0  10    4.1 205  512 425 512,475      135 32
-200-315-4 K   700 25.0  9     3.8 205  326 275 326          138 34
-300-400-4 K  1700 37.0  9     4.0 215  408 345 408,380      132 35  best
-250-500-6 K   960 37.0  12.5  3.9 195  530 440 530,500      140 30  best
-300-500-6 K  1350 33.0  8     4.1 200  528 440 528          136 33
-200-400-4 D   850 37.0  26    2.2 200  406 335 406,375      140 30  power volume
-200-315-4 D   760 27.0  26    2.0 205  330 270 330          138 30
-250-400-4 D  1230 42.0  30    2.1 210  412 355 412          135 32
-250-315-4 D  1100 30.5  34    1.8 215  345 285 345          136 36
-150-400-4 D   560 46.0  21    1.6 195  408 335 408          140 28
-300-400-4 D  1650 43.0  31    2.0 210  414 340 414,385      130 33  volume
-200-500-4 D  1000 64.0  22    1.8 200  515 430 515          138 28  power
-250-500-6 D   890 34.5  23    2.3 195  530 435 530,495      142 28
-300-500-6 D  1240 36.0  24    2.1 200  540 440 540          135 30
-250-400-4 F   960 36.0  27    2.0 205  405 344 405          140 30  volume best
-200-400-4 F   800 38.5  34    1.2 200  405 340 405          140 33
-300-400-4 F  1400 40.0  28    1.4 205  408 345 408,380      134 33
-150-315-4 F   540 28.0  24    0.8 195  328 270 328          138 30  no-minimum-flow
-250-400-6 F  1000 20.0  28    1.0 200  415 345 415          136 34
-350-500-6 F  1900 34.0  25    1.5 205  535 445 535          130 34
-300-315-4 F  1750 22.0  38    0.9 225  335 285 335          126 40
-200-400-4 M   905 35.6  29    1.9 205  408 330 408,378      140 31  volume best
-250-400-4 M  1100 38.0  28    1.7 200  410 335 410,375      136 32  best
-200-315-4 M   640 27.0  32    1.5 195  330 265 330,300,270  138 32 npsh-each
-150-315-4 M   430 29.0  26    1.2 190  326 262 326          140 28
-250-315-4 M   900 26.0  38    1.4 205  332 275 332          134 36
-125-315-4 M   290 30.0  21    1.0 185  325 260 325,295      142 27 npsh-each
-125-400-4 M   330 44.0  18    0.8 185  404 320 404          140 25
-150-250-4 M   380 17.0  35    1.1 195  262 215 262,245,230,215  138 32
-300-400-4 M  1350 33.0  39    1.3 205  405 340 405          132 37
-250-500-6 M   880 36.0  25    2.4 190  525 425 525,490      140 29  volume
-200-500-6 M   560 33.0  20    1.2 185  518 420 518          140 28
-150-200-2 M   470 42.0  36    1.0 220  220 180 220          136 35
-100-200-2 M   210 48.0  25    0.9 200  218 170 218,200,185  140 30
-100-250-2 M   230 78.0  19    0.7 200  262 205 262          138 27  best
-125-250-2 M   330 80.0  23    0.8 210  265 210 265,240      138 30
-200-400-4 G   880 37.5  30    2.3 210  410 335 410,380      142 30  power volume npsh-each
-200-315-4 G   720 30.0  33    1.9 205  334 270 334          138 32
-250-400-4 G  1200 40.0  31    1.8 215  412 345 412,385      136 33 npsh-each
-250-315-4 G  1000 28.0  38    1.6 215  338 285 338          134 37
-150-400-4 G   560 42.0  23    1.8 200  408 325 408          140 28  power
-150-315-4 G   400 31.0  24    1.5 195  330 265 330,300      140 28  volume npsh-each
-125-400-4 G   300 48.0  16    1.2 190  410 325 410          140 25
-300-315-4 G  1450 25.0  44    1.2 225  345 295 345          128 42
-250-500-6 G  1000 38.0  25    2.5 200  532 430 532,500      138 29  power npsh-each
-300-500-6 G  1500 32.0  29    1.9 205  530 440 530          134 32
-125-250-4 G   240 19.0  27    1.4 190  265 210 265          140 30
-150-250-2 G   520 72.0  28    1.3 225  262 215 262          134 35
-100-160-2 G   190 33.0  30    1.1 215  178 145 178,165,150  138 32
-80-200-2  G   120 52.0  20    0.9 200  215 170 215          142 27
-150-400-4 S   800 38.0  28    0.9 150  406 335 406          142 34  volume
-200-400-4 S   800 40.0  50    0.6 195  415 340 415          140 32  bar=6
-250-400-4 S  1150 34.0  31    1.0 205  404 330 404          140 45  best
-200-315-4 S   900 33.5  34    0.8 200  342 290 342          136 38
-125-315-4 S   260 33.0  20   -0.5 165  328 255 328          138 28  no-efficiency
-150-315-4 S   480 27.0  30    0.0 160  326 260 326          136 32  no-document
-100-315-4 S   150 33.0  13   -0.8 160  325 250 325          140 25
-100-400-4 S   170 52.0  11:2  -1.0 155 406 310 406          138 26
-125-500-4 S   340 76.0  15:3  -0.4 165 506 400 506          134 28
-150-500-4 S   520 70.0  18   -0.2 170  505 405 505,465      134 28
-80-250-2  S   110 85.0  13:1  -0.6 170 260 200 260          136 26
-200-400-4 B   920 37.0  31   -1.0 185  410 345 395          132 36  from=20 volume
-250-400-4 B  1020 36.5  32    0.4 190  410 350 410          134 35  no-npsh best
-250-315-4 B  1150 33.0  33   -0.3 195  345 295 345          130 42
-150-400-4 B   620 39.0  26   -0.6 180  405 -   405          130 33  from=15
-300-400-4 B  1500 34.0  37   -0.2 190  405 350 405          128 40  no-document
-200-315-4 B   680 25.0  32   -0.7 185  330 275 330,305      130 34  no-npsh
-150-315-4 B   450 25.0  30   -0.9 180  325 270 325          130 33
-125-400-4 B   320 41.0  17:1 -1.2 175  402 330 402          130 28
-250-500-6 B   940 34.5  27   -0.4 185  530 450 530          132 34  no-minimum-flow
-200-500-4 B   800 62.0  22   -0.8 185  508 425 508          128 31  power
-200-250-4 B   520 16.0  40   -0.6 190  265 -   265          128 40  from=25
-200-400-4 H   900 44.0  28    1.2 200  410 395 410          138 32  best
-250-400-4 H   950 37.0  28    1.5 205  406 340 406          140 31  kW=90
-200-500-4 H   760 66.0  19:1.5 0.8 195 512 430 512,475      136 28
-200-500-6 H   620 30.0  15:2  1.0 190  510 425 510          138 27
-150-500-4 H   480 63.0  16    0.6 190  506 420 506          140 25  no-minimum-flow
-250-500-6 H   940 39.0  13:2  1.6 195  535 445 535          138 28
-300-560-6 H  1250 44.0  23    1.7 200  592 490 592          134 30  no-efficiency
-200-400-4 L   820 36.5  28    4.2 200  406 340 406,380      140 33
-150-315-4 L   390 30.0  25    3.6 190  328 265 328,300      138 29
-100-250-4 L   150 20.0  17    3.2 185  262 205 262          142 26
-125-315-4 L   260 31.0  20    3.3 185  326 260 326          140 27
-200-315-4 L   600 28.0  30    3.8 195  332 270 332          136 33
-150-400-4 L   520 40.0  23    3.5 190  406 330 406          138 28  best
-250-400-4 L   970 34.0  34    3.9 205  404 345 404          136 36  no-minimum
-100-200-2 L   190 45.0  25    2.9 205  216 170 216,195      138 29
-125-250-2 L   300 76.0  22    2.8 210  262 210 262          136 29
-100-315-4 L   160 30.0  14:2  2.5 180  322 255 322          138 26
-80-160-2  L    95 32.0  21    2.6 200  174 138 174          142 27  no-document
-200-250-4 L   480 17.0  36    3.4 200  264 220 264          134 37
-100-250-4 R   140 80.0  16    2.2 180  258 215 258          134 27  stages=4
-125-315-4 R   270 90.0  18    2.4 185  322 265 322          134 28  stages=3
-150-315-4 R   420 58.0  24    2.8 190  326 270 326,300      132 30  stages=2
-200-400-4 R   640 78.0  24    3.0 195  404 345 404          132 30  stages=2
-80-200-2  R    60 215.0 15    1.8 190  212 180 212          132 30  stages=5
-300-250-4 T   830 39.0  48    0.8 205  268 -   268          126 42  stages=2 rpm=1770 no-document
-300-315-4 T   920 36.0  42    1.0 210  318 280 318          130 40  stages=2 law no-document
-300-400-4 T  1150 30.0  46    0.9 215  400 345 400          126 44  no-efficiency law no-document
-250-250-4 T   700 45.0  41    0.6 205  262 230 262          128 40  stages=3 no-npsh
-200-250-4 T   420 24.0  37    0.5 200  262 225 262          128 38  stages=2 no-minimum-flow
-350-400-6 T  1500 32.0  45    1.0 215  422 370 422          126 43  stages=2 law
-"""
+PRINTED = {"metric": METRIC, "US": US}
 
 
 class Pump:
-    """One row of `PUMPS` with its scatter, at the largest diameter: m3/h, m, mm, rpm, shares as fractions."""
+    """One row with its scatter, at the largest diameter: m3/h, m, mm, rpm, shares as fractions."""
 
-    def __init__(self, row: str) -> None:
+    def __init__(self, row: str, plant: dict[str, Any]) -> None:
         size, letter, flow, head, rise, points, suction, largest, smallest, tested, last, stable, *words = (
             row.split()
         )
         self.id = f"{size} {letter}"
-        self.random = random = Random(f"{SEED} {self.id}")  # so no pump depends on the rows around it
-        self.series = SERIES[letter]
+        self.random = random = Random(
+            f"{plant['seed']} {self.id}"
+        )  # so no pump depends on the rows around it
+        self.series = Series(**plant["series"][letter])
         self.outlet, poles = int(size.split("-")[0]), size.split("-")[2]
         self.remarks = {word.partition("=")[0]: word.partition("=")[2] for word in words}
         self.stages = int(self.remarks.get("stages", 1))
@@ -331,6 +195,11 @@ def printed_source(pump: Pump, sheet: int) -> dict[str, Any]:
 def printed_pump(pump: Pump, sheet: int, units: Units) -> dict[str, Any]:
     """One pump in the catalog format."""
     several = {"stages": pump.stages} if pump.stages > 1 else {}
+    varies = (
+        {"speed_range": [round(pump.speed * part / 100) for part in pump.series.turns]}
+        if pump.series.turns
+        else {}
+    )
     impeller: dict[str, Any] = {"maximum": length(pump.largest, units)}
     if pump.smallest is not None:
         impeller["minimum"] = length(pump.smallest, units)
@@ -342,6 +211,7 @@ def printed_pump(pump: Pump, sheet: int, units: Units) -> dict[str, Any]:
         **several,
         "eyes": pump.series.eyes,
         "speed": pump.speed,
+        **varies,
         "impeller": impeller,
         "curves": [printed_curve(pump, diameter, units) for diameter in pump.tested],
         "limits": printed_limits(pump, units),
@@ -349,32 +219,34 @@ def printed_pump(pump: Pump, sheet: int, units: Units) -> dict[str, Any]:
     }
 
 
-def catalogs() -> Iterator[tuple[str, str]]:
+def catalogs(plant: dict[str, Any]) -> Iterator[tuple[str, str]]:
     """Name and text of every file; a column of a curve takes one line."""
-    rows = [Pump(row) for row in PUMPS.strip().splitlines()]
-    for name, (title, letters, units) in FILES.items():
-        pumps = [pump for pump in rows if pump.id.split()[1] in letters]
+    rows = [Pump(row, plant) for row in plant["pumps"].strip().splitlines()]
+    for file in plant["file"]:
+        units = PRINTED[file.get("units", "metric")]
+        pumps = [pump for pump in rows if pump.id.split()[1] in file["letters"]]
         catalog = {
             "format": "pump-catalog/1",
-            "title": title,
+            "title": file["title"],
             "revision": "1",
             "licence": "MIT",
             "notes": "Invented: no maker offers these pumps. Written by tests/demo/make_catalog.py.",
             "units": units.names,
             "pumps": [printed_pump(pump, sheet, units) for sheet, pump in enumerate(pumps, start=1)],
         }
-        yield name, re.sub(r"\[[^][{}]*\]", _on_one_line, json.dumps(catalog, indent=1)) + "\n"
+        yield file["name"], re.sub(r"\[[^][{}]*\]", _on_one_line, json.dumps(catalog, indent=1)) + "\n"
 
 
 def _on_one_line(array: re.Match[str]) -> str:
     return re.sub(r"\s+", "", array[0]).replace(",", ", ")
 
 
-def main(folder: str) -> None:
-    """Write every file into the folder."""
-    for name, text in catalogs():
+def main(plant: str, folder: str) -> None:
+    """Write every file of a plant into the folder."""
+    rows = Path(__file__).parent / "plants" / f"{plant}.toml"
+    for name, text in catalogs(tomllib.loads(rows.read_text(encoding="utf-8"))):
         (Path(folder) / name).write_text(text, encoding="utf-8", newline="\n")
 
 
 if __name__ == "__main__":
-    main(sys.argv[1])
+    main(*sys.argv[1:])

@@ -9,15 +9,21 @@ import sys
 import warnings
 from collections.abc import Callable, Mapping, Sequence
 from contextlib import redirect_stdout
+from copy import copy
+from functools import cache
 from pathlib import Path
 from typing import Any
 
 import pytest
+from scipy.interpolate import CubicSpline
+from scipy.optimize import brentq
 
 from screener.cli import run
 
 POINTS = 31
 """Points of each curve. Ten, or straight lines between them, move the small flows by several m3/h."""
+
+CATALOGS = Path(__file__).parents[2] / "catalogs"
 
 Json = dict[str, Any]
 Quadratic = tuple[float, float, float]
@@ -144,3 +150,79 @@ def findings_of() -> Callable[..., dict[str, Json]]:
 def share() -> Callable[..., list[float]]:
     """Flows of parallel quadratics that give what is demanded at their common head, by bisection."""
     return _share
+
+
+class Printed:
+    """A pump of a demo's catalog in m3/h and m, read from its file with a spline of scipy.
+
+    cut, ratio : of the diameter and of the speed; by the affinity laws flows go with both, heads with their
+                 squares. NPSH required goes with speed alone: a trim leaves the inlet as it is.
+    loss       : [m per (m3/h)^2] of its branch
+    """
+
+    def __init__(
+        self, demo: str, name: str, diameter: float, *, cut: float = 1, ratio: float = 1, loss: float = 0
+    ) -> None:
+        files = (CATALOGS / demo / "pumps").glob("*.json")
+        (pump,) = (
+            pump
+            for file in files
+            for pump in json.loads(file.read_text(encoding="utf-8"))["pumps"]
+            if pump["id"] == name
+        )
+        (curve,) = (curve for curve in pump["curves"] if curve["diameter"] == diameter)
+        self.speed, self.ratio, self.loss = pump["speed"], ratio, loss
+        self.factor = cut * ratio
+        self.minimum = pump["limits"]["minimum_flow"]
+        self.end = self.factor * curve["flow"][-1]
+        self._columns = {}
+        largest = pump["curves"][-1]  # often the only one with NPSH required
+        for test, column in ((curve, "head"), (curve, "efficiency"), (largest, "npsh_required")):
+            points = [(q, y) for q, y in zip(test["flow"], test[column], strict=True) if y is not None]
+            self._columns[column] = CubicSpline(*zip(*points, strict=True))
+
+    def turned(self, ratio: float) -> Printed:
+        """The same pump at another speed."""
+        other = copy(self)
+        other.factor, other.ratio, other.end = self.factor * ratio, self.ratio * ratio, self.end * ratio
+        return other
+
+    def head(self, flow: float) -> float:
+        return float(self.factor**2 * self._columns["head"](flow / self.factor))
+
+    def efficiency(self, flow: float) -> float:
+        return float(self._columns["efficiency"](flow / self.factor)) / 100
+
+    def npsh_required(self, flow: float) -> float:
+        return float(self.ratio**2 * self._columns["npsh_required"](flow / self.ratio))
+
+    def flow(self, header: float) -> float:
+        """Flow at a header head, 0 behind a check valve that is shut."""
+
+        def spare(flow: float) -> float:
+            return self.head(flow) - self.loss * flow**2 - header
+
+        return brentq(spare, 0, self.end) if spare(0) > 0 else 0.0
+
+
+def _meet(pumps: Sequence[Printed], demand: Callable[[float], float], *, top: float) -> float:
+    ends = [pump.head(pump.end) - pump.loss * pump.end**2 for pump in pumps]
+    return brentq(lambda header: sum(pump.flow(header) for pump in pumps) - demand(header), max(ends), top)
+
+
+@pytest.fixture(scope="session")
+def demo_of() -> Callable[[str], Plant]:
+    """A demo plant by its name, and what the commands say about it."""
+    return cache(lambda name: Plant(CATALOGS / name / "case.toml"))
+
+
+@pytest.fixture(scope="session")
+def printed() -> type[Printed]:
+    """A pump of a demo's catalog, read independently of the tool."""
+    return Printed
+
+
+@pytest.fixture(scope="session")
+def meet() -> Callable[..., float]:
+    """Header head of parallel `Printed` pumps that give what is demanded there, at most `top`."""
+    return _meet
