@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     from screener.case.load import load, load_case
     from screener.catalog.load import load_catalog
     from screener.changes.closer import look_closer
+    from screener.changes.datasheet import compare, datasheet
     from screener.changes.operation import operation
     from screener.errors import InputError, OutputError, Problem, ScreenerError, UsageError
     from screener.export.frame import to_frame
@@ -33,6 +34,8 @@ if TYPE_CHECKING:
 _HOMES = {
     "load": "screener.case.load",
     "look_closer": "screener.changes.closer",
+    "compare": "screener.changes.datasheet",
+    "datasheet": "screener.changes.datasheet",
     "operation": "screener.changes.operation",
     "load_case": "screener.case.load",
     "load_catalog": "screener.catalog.load",
@@ -58,6 +61,8 @@ __all__ = [
     "Shortlist",
     "UsageError",
     "__version__",
+    "compare",
+    "datasheet",
     "demo",
     "explain",
     "header_report",

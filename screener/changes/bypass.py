@@ -136,7 +136,7 @@ def warming(bench: Bench, run: Run) -> tuple[Warming, ...]:
     """How warm a pump of one candidate gets wherever it has little more than its minimum flow, or none."""
     case, limits = bench.header.case, bench.limits["minimum-flow"]
     result = []
-    for place, state in enumerate(bench.header.states):
+    for place in range(len(bench.header.states)):
         least = np.fmax(*_minimums(bench, run, place)) / limits["fail_below"]
         capacity = float(run.conditions.heat_capacity[place])
         for column in np.flatnonzero(run.conditions.runs[place]):
@@ -145,7 +145,7 @@ def warming(bench: Bench, run: Run) -> tuple[Warming, ...]:
                 continue
             rise, times, needs = np.nan, (np.nan, np.nan), tuple[str, ...]()
             if flow == 0:
-                times, needs = _times(run, case, place, _pump(case, run, place, int(column)), state.liquid)
+                times, needs = _times(run, case, place, int(column))
             else:
                 head, efficiency = run.head[0, place, column], run.efficiency[0, place, column]
                 rise = float(temperature_rise(head=head, efficiency=efficiency, heat_capacity=capacity))
@@ -258,11 +258,11 @@ def _power(pump: Pumps, flow: float, head: float) -> float:
     return REFERENCE_DENSITY * GRAVITY * flow * head / efficiency if efficiency > 0 else float(np.nan)
 
 
-def _times(
-    run: Run, case: Case, place: int, pump: Pumps, liquid_row: int
-) -> tuple[tuple[float, float], tuple[str, ...]]:
+def _times(run: Run, case: Case, place: int, column: int) -> tuple[tuple[float, float], tuple[str, ...]]:
     """Times to boil of a pump held shut in a state, at the eye and in the casing, and what is missing."""
-    liquid, curves = case.liquids[liquid_row], pump.curves
+    liquid = case.liquids[case.duties[int(run.conditions.duty[place])].liquid]
+    pump = _pump(case, run, place, column)
+    curves = pump.curves
     volume = float(pump.casing_volume[0])
     power = float(curves.power[0, 0]) * liquid.density / REFERENCE_DENSITY
     missing = {
@@ -271,7 +271,7 @@ def _times(
         "head at zero flow": curves.start[0] > 0,
         "temperature of the liquid": np.isnan(liquid.temperature),
     }
-    suction = case.atmospheric_pressure + float(run.conditions.suction_pressure[place])
+    suction = case.atmospheric_pressure + float(run.conditions.suction_pressure[place, column])
     shutoff = suction + liquid.density * GRAVITY * float(curves.head[0, 0])
     boiling = boiling_temperature(pressure=np.array([suction, shutoff]))
     seconds = time_to_boil(

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 from screener.changes.bypass import Need, Warming, needed, settings, verified, warming
 from screener.changes.reading import Reading, readings
+from screener.changes.sampling import Sampled, probability
 from screener.changes.smallest import Change, smallest_changes
 from screener.changes.tolerance import Corner, corners
 from screener.model.finding import Verdict
@@ -19,6 +20,7 @@ class Closer:
     changes  : single changes that would let it pass; empty where it passes, or where none does
     corners  : of the acceptance tolerance
     readings : ways in which the points of its curve may have been misread
+    sampled  : how likely it is to pass, one row
     bypasses : that pumps need in duties as they are;  with_bypasses : the verdict with all of them
     warming  : pumps that get little more than their minimum flow, or none
     """
@@ -27,6 +29,7 @@ class Closer:
     changes: tuple[Change, ...]
     corners: tuple[Corner, ...]
     readings: tuple[Reading, ...]
+    sampled: Sampled
     bypasses: tuple[Need, ...]
     with_bypasses: Verdict | None
     warming: tuple[Warming, ...]
@@ -42,6 +45,7 @@ def look_closer(explained: Explained) -> Closer:
         tuple(smallest_changes(bench, explained.table, pumps, findings)[0]),
         corners(bench, pumps, findings),
         readings(bench, pumps, findings),
+        probability(bench, explained.table, pumps),
         bypasses,
         verified(bench, pumps, settings(bench, bypasses)) if bypasses else None,
         warming(bench, judged.run),

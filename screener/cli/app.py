@@ -17,10 +17,13 @@ COMMANDS: Mapping[str, tuple[str, str]] = {
     ),
     "explain": ("screener.cli.explain", "Every state and every criterion of one pump."),
     "trims": ("screener.cli.trims", "The diameters of one pump side by side."),
+    "datasheet": ("screener.cli.datasheet", "The data sheet of one pump, with where each figure came from."),
+    "compare": ("screener.cli.compare", "Two to eight pumps side by side: asked, offered, verdict."),
     "operation": (
         "screener.cli.operation",
         "Which pumps to run in each duty, and which may run at which header flow.",
     ),
+    "report": ("screener.cli.report", "The whole case in one file, for filing, review and defence."),
     "catalog": ("screener.cli.catalog", "Check catalogs of pump curves."),
     "case": ("screener.cli.case", "Check a case, or start a new one."),
 }

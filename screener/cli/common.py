@@ -8,33 +8,44 @@ import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
-from typing import TYPE_CHECKING, Annotated
+from typing import TYPE_CHECKING, Annotated, TypeVar
 
 import typer
 
 from screener.errors import UsageError
 
 if TYPE_CHECKING:
+    from screener.case.load import Loaded
     from screener.model.curves import PumpTable
     from screener.view.blocks import Screen
 
 CaseFile = Annotated[Path, typer.Argument(metavar="CASE", help="The case file, .toml or .json.")]
 Pump = Annotated[str, typer.Argument(metavar="PUMP", help="Id of the pump in the catalog.")]
+Diameter = Annotated[
+    str | None, typer.Option("--diameter", help='Impeller, such as "395 mm"; the best one by default.')
+]
 Catalogs = Annotated[
     list[Path] | None,
     typer.Option(
         "--catalog", metavar="PATH", help="Catalog file or folder, instead of those in the case; repeatable."
     ),
 ]
-Format = Annotated[str, typer.Option("--format", help="What goes to stdout: table, json, csv or markdown.")]
+Format = Annotated[
+    str, typer.Option("--format", help="What goes to stdout: table, json, csv, markdown or html.")
+]
 Outputs = Annotated[
     list[Path] | None,
     typer.Option(
-        "--output", metavar="FILE", help="Write a file too, format by suffix (.json .csv .md); repeatable."
+        "--output",
+        metavar="FILE",
+        help="Write a file too, format by suffix (.json .csv .md .html .xlsx, charts as .svg .pdf .png); "
+        "repeatable.",
     ),
 ]
 Force = Annotated[bool, typer.Option("--force", help="Replace files that exist.")]
 
+
+Result = TypeVar("Result")
 
 PIPED_WIDTH = 120
 """Characters of a line where the screen goes to a file or another command, and COLUMNS says nothing."""
@@ -49,16 +60,21 @@ def new_app() -> typer.Typer:
 
 def check_outputs(name: str, outputs: list[Path] | None, force: bool) -> None:
     """Refuse unknown formats, and files that cannot be written, before any work is done."""
-    from screener.export import formats
+    from screener.export import formats, missing
     from screener.files import atomic
 
-    names = ["table", *(module.NAME for module in formats())]
-    if name not in names:
-        raise UsageError(f'unknown format "{name}" (one of {", ".join(names)})')
-    suffixes = [module.SUFFIX for module in formats()]
+    printed = ["table", *(module.NAME for module in formats() if not getattr(module, "FILE_ONLY", False))]
+    by_suffix = {module.SUFFIX: module for module in formats()}
+    if name not in printed:
+        only = [module.SUFFIX for module in formats() if name == module.NAME]
+        if only:
+            raise UsageError(f'"{name}" goes to files only (--output FILE{only[0]})')
+        raise UsageError(f'unknown format "{name}" (one of {", ".join(printed)})')
     for path in outputs or []:
-        if path.suffix.lower() not in suffixes:
-            raise UsageError(f'{path}: unknown suffix "{path.suffix}" (one of {", ".join(suffixes)})')
+        if path.suffix.lower() not in by_suffix:
+            raise UsageError(f'{path}: unknown suffix "{path.suffix}" (one of {", ".join(by_suffix)})')
+        if needed := missing(getattr(by_suffix[path.suffix.lower()], "NEEDS", "")):
+            raise UsageError(f"{path}: {needed}")
     atomic.check(outputs or [], force=force)
 
 
@@ -86,6 +102,21 @@ def emit(screen: Screen, name: str, outputs: list[Path] | None, force: bool) -> 
         sys.stdout.write(text.get())
     else:
         sys.stdout.write({module.NAME: module for module in formats()}[name].render(screen))
+
+
+def at_diameter(loaded: Loaded, pump: str, diameter: str | None, work: Callable[..., Result]) -> Result:
+    """Do some work on one pump: work(case, catalog, row of the pump, diameter in m or None for the best).
+
+    A diameter that cannot be read, or is not on offer, is an error of the command line.
+    """
+    model = row_of(loaded.catalog, pump)
+    try:
+        wanted = None if diameter is None else length(diameter, loaded.case.display["length"])
+        return work(loaded.case, loaded.catalog, model, wanted)
+    except ValueError as error:
+        if diameter is None:
+            raise
+        raise UsageError(f"--diameter: {error}") from error
 
 
 def row_of(catalog: PumpTable, pump: str) -> int:

@@ -2,12 +2,10 @@
 
 from __future__ import annotations
 
-from typing import Annotated
-
 import typer
 
 from screener.cli import common
-from screener.errors import ExitCode, UsageError
+from screener.errors import ExitCode
 
 app = common.new_app()
 
@@ -16,9 +14,7 @@ app = common.new_app()
 def explain(
     case: common.CaseFile,
     pump: common.Pump,
-    diameter: Annotated[
-        str | None, typer.Option("--diameter", help='Impeller, such as "395 mm"; the best one by default.')
-    ] = None,
+    diameter: common.Diameter = None,
     catalog: common.Catalogs = None,
     format: common.Format = "table",
     output: common.Outputs = None,
@@ -36,14 +32,7 @@ def explain(
     from screener.view.data import Origin
 
     loaded = load(case, catalog or ())
-    model = common.row_of(loaded.catalog, pump)
-    try:
-        wanted = None if diameter is None else common.length(diameter, loaded.case.display["length"])
-        result = look_at(loaded.case, loaded.catalog, model, wanted)
-    except ValueError as error:
-        if diameter is None:
-            raise
-        raise UsageError(f"--diameter: {error}") from error
+    result = common.at_diameter(loaded, pump, diameter, look_at)
     common.emit(view.screen(look_closer(result), Origin(loaded.files)), format, output, force)
     if not result.passing.size:
         raise typer.Exit(ExitCode.NOTHING_PASSED)

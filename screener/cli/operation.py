@@ -21,9 +21,7 @@ def operation(
             metavar="PUMP", help="Id of a new pump in the catalog; without it the header as it is."
         ),
     ] = None,
-    diameter: Annotated[
-        str | None, typer.Option("--diameter", help='Impeller, such as "395 mm"; the best one by default.')
-    ] = None,
+    diameter: common.Diameter = None,
     catalog: common.Catalogs = None,
     format: common.Format = "table",
     output: common.Outputs = None,
@@ -41,15 +39,5 @@ def operation(
     from screener.view.data import Origin
 
     loaded = load(case, catalog or ())
-    if pump is None:
-        result = find(loaded.case)
-    else:
-        model = common.row_of(loaded.catalog, pump)
-        try:
-            wanted = None if diameter is None else common.length(diameter, loaded.case.display["length"])
-            result = find(loaded.case, loaded.catalog, model, wanted)
-        except ValueError as error:
-            if diameter is None:
-                raise
-            raise UsageError(f"--diameter: {error}") from error
+    result = find(loaded.case) if pump is None else common.at_diameter(loaded, pump, diameter, find)
     common.emit(view.screen(result, Origin(loaded.files)), format, output, force)

@@ -15,7 +15,7 @@ def observe(run: Run, limits: Mapping[str, float]) -> Observed:
     """Largest suction pressure plus largest head of the curve, over the lower of the two ratings."""
     conditions, ratings = run.conditions, run.ratings
     head = run.bounds.summit[:, :, :1] * per_state(conditions.density * GRAVITY)
-    pressure = per_state(conditions.suction_pressure) + head
+    pressure = conditions.suction_pressure[:, :1] + head
     allowed = np.fmin(ratings.allowable_pressure[:, 0], limits["header"])
     known = ~np.isnan(ratings.allowable_pressure[:, 0]) & ~np.isnan(limits["header"])
     value = pressure / once(allowed)

@@ -131,7 +131,7 @@ class Conditions:
     asked     : [m3/s] flow of the duty
     wanted_head : [m] header head at which the system takes that flow
     density   : [kg/m3];  heat_capacity : [J/(kg K)];  vapour_pressure : [Pa]
-    suction_pressure : [Pa gauge] at the pumps' datum, no flow
+    suction_pressure : (s, 1 + p) [Pa gauge] at each pump, no flow
     share_of_hours : [-] share of the duty's hours; hours : [h] per year of the duty, NaN where not stated
     runs      : (s, 1 + p) whether each pump runs, new pump first
     """

@@ -481,7 +481,9 @@ def _held_at_most(
 ) -> Floats:
     """Header head, or, where a pump is past its data, the head at its end: it is lower yet."""
     standing = header.standing[column]
-    ends = _beside_one(fitted(standing.setting).branches.end_head, standing.branches.end_head) * speed**2
+    fast = fitted(standing.setting)
+    slower = speed / _beside_one(fast.ratio, standing.ratio)
+    ends = _beside_one(fast.branches.end_head, standing.branches.end_head) * slower**2
     past = np.where(np.isposinf(flow), ends, np.inf).min(axis=1)
     return np.where(np.isnan(head) & np.isfinite(past), past, head)
 

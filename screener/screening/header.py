@@ -232,8 +232,10 @@ def _conditions(
         runs[place, 0] = state.new > 0
         runs[place, [1 + row for row in state.running]] = True
     density = np.array([liquid.density for liquid in liquids])
+    places = [case.new_pump.branch, *(pump.branch for pump in case.installed)]
     suction = [
-        lv.vessel_pressure + rho * GRAVITY * lv.suction_head for lv, rho in zip(levels, density, strict=True)
+        [lv.vessel_pressure + rho * GRAVITY * (lv.suction_head + branch.suction_head) for branch in places]
+        for lv, rho in zip(levels, density, strict=True)
     ]
     return Conditions(
         duty=frozen([state.duty for state in found], np.int64),

@@ -15,7 +15,7 @@ from screener.header.turndown import Band
 from screener.hydraulics import interpolate
 from screener.hydraulics.constants import GRAVITY, REFERENCE_DENSITY
 from screener.hydraulics.similarity import take, trimmed
-from screener.model.arrays import STATIONS, Floats
+from screener.model.arrays import STATIONS, Bools, Floats
 from screener.model.curves import Pumps
 from screener.model.run import Kind, Run, in_state
 from screener.screening.assess import Bench
@@ -27,9 +27,6 @@ from screener.screening.today import combined_band
 
 POINTS = 65
 """Points of a line."""
-
-DEMANDS = 33
-"""Header flows at which the shares of load are read."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -188,30 +185,37 @@ def other_diameters(explained: Explained) -> Pumps:
 def load_shares(bench: Bench, run: Run) -> Shares | None:
     """Shares of load from the largest to the smallest demand, and on to the lowest permitted header flow.
 
-    None where the rated duty has no figures, or is not run at load.
+    None where the new pump gives nothing at the rated duty, or where that is not known or not run at load.
     """
     header = bench.header
     new = fit(header, run.pumps, header.base.setting).branches
     state = header.states[header.rated]
     rated = run.flow[0, header.rated]
     band = combined_band(header, state.running, run.pumps, state.new)
-    same = [
-        place
-        for place, other in enumerate(header.states)
-        if other.kind == Kind.DUTY and other.new and header.conditions.usual[place]
-    ]
-    heads = run.header[0, same]
-    heads = np.append(heads[np.isfinite(heads)], band.lowest_head)
-    if not np.isfinite(rated).any() or not header.conditions.usual[header.rated] or len(heads) < 2:
+    runs = np.isfinite(rated[0]) and rated[0] > 0
+    if not runs or not header.conditions.usual[header.rated]:
         return None
-    head = np.linspace(heads.min(), heads.max(), DEMANDS)
-    flow = np.full((DEMANDS, len(rated)), np.nan)
-    for column, (branches, row) in {
-        0: (new, 0),
-        **{1 + row: (header.branches, row) for row in state.running},
-    }.items():
-        flow[:, column] = _flow(branches, row, head)
+    heads = [*run.header[0, same_combination(header)], *band.lowest_head]
+    head = np.linspace(np.nanmin(heads), np.nanmax(heads), POINTS)
+    flow = np.full((POINTS, len(rated)), np.nan)
+    flow[:, 0] = _flow(new, 0, head)
+    for row in state.running:
+        flow[:, 1 + row] = _flow(header.branches, row, head)
     flow[~np.isfinite(flow)] = np.nan
     total = state.new * flow[:, 0] + flow[:, [1 + row for row in state.running]].sum(axis=1)
     share = flow / np.where(rated > 0, rated, np.nan)
     return Shares(total, share, state.running, band)
+
+
+def same_combination(header: Header) -> Bools:
+    """The duties at load that are run with the pumps of the rated one, or with identical ones, (s,)."""
+    alike = [sorted(header.alike[list(state.running)].tolist()) for state in header.states]
+    return np.array(
+        [
+            state.kind == Kind.DUTY
+            and state.new > 0
+            and bool(header.conditions.usual[place])
+            and alike[place] == alike[header.rated]
+            for place, state in enumerate(header.states)
+        ]
+    )

@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
+from screener import ranking
 from screener.header.requirement import Requirement, requirement
 from screener.hydraulics.similarity import take as take_pumps
 from screener.hydraulics.similarity import trimmed
@@ -14,7 +15,7 @@ from screener.hydraulics.viscosity import corrected
 from screener.model.arrays import Bools, Floats, Ints
 from screener.model.case import Case
 from screener.model.curves import PumpTable
-from screener.model.finding import Candidates, Findings, Verdict
+from screener.model.finding import Candidates, Figures, Findings, Verdict
 from screener.model.run import Kind, Speed
 from screener.screening.assess import Bench, assess, join, judged, restored, set_up, take
 from screener.screening.judge import inherited
@@ -26,6 +27,19 @@ LADDER = 12
 """Diameters of each model looked at first, from the smallest that meets the duties to the largest."""
 
 Progress = Callable[[int, int], None]
+
+
+@dataclass(frozen=True, slots=True)
+class RestoredAlone:
+    """What restoring the worn pumps would give without any new pump.
+
+    total   : [m3/s] at the rated duty;  meets : whether every duty gets what it asks
+    figures : of one row; those of match are not known
+    """
+
+    total: float
+    meets: bool
+    figures: Figures
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,7 +55,7 @@ class Shortlist:
     duty_efficiency : (b,) [-] efficiency of each of `best` at the flow that the rated duty asks of the new
                  pump, as a search pump by pump would see it; NaN where not known
     restored   : (b) the same rows of `best`, judged with the installed pumps as new; None where none is worn
-    restored_total : [m3/s] what the installed pumps alone give as new at the rated duty, NaN likewise
+    alone      : the installed pumps as new, without a new one; None likewise
     screened   : candidates that were run
     references : one more of each kind of installed pump
     same_as    : for each reference the row of the installed pump
@@ -55,7 +69,7 @@ class Shortlist:
     best: Candidates
     duty_efficiency: Floats
     restored: Candidates | None
-    restored_total: float
+    alone: RestoredAlone | None
     screened: int
     references: Candidates
     same_as: tuple[int, ...]
@@ -78,7 +92,7 @@ def shortlist(case: Case, catalog: PumpTable, *, progress: Progress | None = Non
     finalists = join([take(first, _best(first)), take(second, _best(second))])
     best = take(finalists, _best(finalists))
     best = take(best, np.lexsort((best.model, _merit(best), best.verdict)))
-    restored_best, restored_total = _restored(case, catalog, found, best)
+    restored_best, alone = _restored(case, catalog, found, best)
     same_as = tuple(dict.fromkeys(int(row) for row in classes(restored(case))))
     return Shortlist(
         bench=bench,
@@ -88,7 +102,7 @@ def shortlist(case: Case, catalog: PumpTable, *, progress: Progress | None = Non
         best=best,
         duty_efficiency=_duty_efficiency(bench, catalog, found, best, needs[bench.header.rated].flow),
         restored=restored_best,
-        restored_total=restored_total,
+        alone=alone,
         screened=len(first) + len(second),
         references=judged(bench, take_pumps(case.as_new or case.pumps, np.array(same_as))).candidates,
         same_as=same_as,
@@ -134,14 +148,28 @@ def best_of(candidates: Candidates) -> int:
 
 def _restored(
     case: Case, catalog: PumpTable, found: Reach, best: Candidates
-) -> tuple[Candidates | None, float]:
+) -> tuple[Candidates | None, RestoredAlone | None]:
     """The best candidates with the installed pumps as new, and what those give then without a new one."""
     if case.as_new is None:
-        return None, np.nan
+        return None, None
     bench = set_up(restored(case))
     speed_ratio = found.speed_ratio[best.model]
     again = assess(bench, catalog, model=best.model, diameter=best.diameter, speed_ratio=speed_ratio)
-    return again, float(bench.today.total[0, bench.header.rated])
+    return again, _alone(bench)
+
+
+def _alone(bench: Bench) -> RestoredAlone:
+    """The installed pumps of a bench without a new one, over all duties."""
+    case, conditions = bench.header.case, bench.today.conditions
+    runs = conditions.runs & (np.arange(conditions.runs.shape[1]) > 0)
+    run = replace(bench.today, conditions=replace(conditions, runs=runs))
+    duties = conditions.kind == Kind.DUTY
+    drives = [case.new_pump.drive, *(pump.drive for pump in case.installed)]
+    return RestoredAlone(
+        total=float(run.total[0, bench.header.rated]),
+        meets=bool((run.total[0, duties] >= 0.999 * conditions.asked[duties]).all()),
+        figures=ranking.figures(run, bench.without, count=0, drives=drives, weights=case.weights),
+    )
 
 
 def _duty_efficiency(bench: Bench, catalog: PumpTable, found: Reach, best: Candidates, flow: float) -> Floats:

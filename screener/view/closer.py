@@ -17,6 +17,7 @@ from screener.model.arrays import Bools, Codes
 from screener.model.finding import Outcome, Verdict
 from screener.screening.assess import Bench
 from screener.view import names
+from screener.view import sampling as view_sampling
 from screener.view.blocks import Block, Cell, Column, Heading, Lines, Table
 from screener.view.data import VERDICTS
 from screener.view.display import Display, word
@@ -299,13 +300,14 @@ class Nearer:
     """What a shortlist shows of the closer look at one candidate.
 
     change   : what it would pass with, "" where it passes
-    corners, reading : whether its verdict holds, "" where it does not pass
+    corners, reading, likely : whether its verdict holds, and how likely that is; "" where it does not pass
     data     : all of it as data
     """
 
     change: str
     corners: str
     reading: str
+    likely: Cell
     data: dict[str, Any]
 
 
@@ -318,10 +320,14 @@ def nearer(bench: Bench, display: Display, near: Near, verdicts: Codes) -> dict[
             change="" if passes else short(bench, display, change),
             corners=worst_corner(near.corners, place) if passes else "",
             reading=misread(near.readings, place) if passes else "",
+            likely=view_sampling.likely(near.sampled, place) if passes else Cell(""),
             data={
                 "changes": changes_data(bench, display, [change] if change else []),
                 "tolerance": corners_data(bench, display, near.corners, place),
                 "reading_error": readings_data(bench, display, near.readings, place),
+                "probability": view_sampling.sampling_data(bench, display, near.sampled, place)
+                if passes
+                else None,
             },
         )
     return result

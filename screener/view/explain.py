@@ -17,8 +17,10 @@ from screener.view import bypass as view_bypass
 from screener.view import closer as view_closer
 from screener.view import data, names
 from screener.view import liquids as view_liquids
+from screener.view import sampling as view_sampling
 from screener.view import speeds as view_speeds
-from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
+from screener.view.blocks import Block, Cell, Chart, Column, Heading, Lines, Screen, Table, Tone
+from screener.view.charts import load_share, pump, with_new
 from screener.view.data import Origin
 from screener.view.display import DASH, Display, percent, plain, word
 from screener.view.findings import NO_FIGURES, Found, found, unit_of
@@ -61,6 +63,7 @@ def screen(closer: Closer, origin: Origin) -> Screen:
         *view_bypass.heating(bench, display, closer.warming),
         *view_closer.corners(bench, display, closer.corners),
         *view_closer.readings(bench, display, closer.readings, result.table.sources[result.model]),
+        *view_sampling.sampling(bench, display, closer.sampled),
         Lines(_figures(result, display)),
         Lines(data.CAUTIONS, Tone.QUIET),
     ]
@@ -71,9 +74,18 @@ def screen(closer: Closer, origin: Origin) -> Screen:
         "heating": view_bypass.heating_data(bench, display, closer.warming),
         "changes": view_closer.changes_data(bench, display, closer.changes),
         "tolerance": view_closer.corners_data(bench, display, closer.corners, 0),
+        "probability": view_sampling.sampling_data(bench, display, closer.sampled, 0),
         "reading_error": view_closer.readings_data(bench, display, closer.readings, 0),
     }
-    return Screen(blocks, states, {**_data(result, display, origin, items), **more})
+    return Screen(
+        blocks, states, {**_data(result, display, origin, items), **more}, charts=lambda: _charts(result)
+    )
+
+
+def _charts(result: Explained) -> list[Chart]:
+    """The header with the pump, the pump by itself, and how the load is shared where that is known."""
+    shares = load_share.chart(result)
+    return [with_new.chart(result), pump.chart(result), *([shares] if shares else [])]
 
 
 def _pump(result: Explained, display: Display) -> str:
@@ -162,6 +174,7 @@ def _states(bench: Bench, display: Display, run: Run) -> Table:
     columns = [
         Column("state", "state", left=True),
         Column("level", "level", left=True, rank=0 if len(case.levels) > 1 else 9),
+        Column("liquid", "liquid", left=True, rank=3 if len(case.liquids) > 1 else 9),
         Column("header_head", "header", display.unit("head")),
         Column("total_flow", "total", display.unit("flow"), rank=3),
         *(
@@ -187,6 +200,7 @@ def _states(bench: Bench, display: Display, run: Run) -> Table:
             [
                 word(names.situation(case, state)),
                 word(names.level(case, state)),
+                word(names.liquid(case, state)),
                 display.cell("head", run.header[0, place]),
                 display.cell("flow", run.total[0, place]),
                 *(_flow(display, run, place, column) for column in range(len(flow))),
@@ -253,8 +267,11 @@ def _criteria(bench: Bench, display: Display, items: list[Found]) -> Table:
         Column("source", "limit from", left=True, rank=4),
     ]
     rows = []
-    for item in sorted(items, key=lambda item: -item.outcome):
+    for item in sorted(items, key=lambda item: (-item.outcome, _silent(item))):
         missing = item.outcome == Outcome.NOT_ASSESSED
+        if _silent(item):
+            rows.append([word(item.criterion.name), Cell("n/a", "pass", Tone.QUIET), *[word("")] * 5])
+            continue
         rows.append(
             [
                 word(item.criterion.name),
@@ -267,6 +284,11 @@ def _criteria(bench: Bench, display: Display, items: list[Found]) -> Table:
             ]
         )
     return Table(columns, rows)
+
+
+def _silent(item: Found) -> bool:
+    """Whether a criterion has nothing to say about this pump on this header."""
+    return item.outcome == Outcome.PASS and item.value.value is None
 
 
 def _missing(item: Found) -> str:
@@ -292,11 +314,11 @@ def _source(bench: Bench, item: Found) -> str:
 
 def _figures(result: Explained, display: Display) -> list[str]:
     f = data.figures(result.bench, display, result.judged.candidates, 0)
-    text = []
+    text, energy = [], data.energy_words(result.bench.header.case)
     if f["efficiency"] is not None:
-        text.append(f"Useful head over shaft energy of all pumps {f['efficiency']:.1f} %")
+        text.append(f"Useful head over {energy} of all pumps {f['efficiency']:.1f} %")
     if f["energy_mwh_per_year"] is not None:
-        text.append(f"{f['energy_mwh_per_year']:.0f} MWh of shaft energy a year")
+        text.append(f"{f['energy_mwh_per_year']:.0f} MWh of {energy} a year")
         text.append(f"{f['energy_kwh_per_m3']:.4f} kWh/m3")
     if f["motor"] is not None:
         text.append(f"motor {f['motor']:g} {display.unit('power')}")
@@ -305,7 +327,7 @@ def _figures(result: Explained, display: Display) -> list[str]:
         for trip in f["firm_flow"]
         if trip["delivered"] is not None
     ]
-    lines = [", ".join(text) + "."] if text else []
+    lines = [text[0][0].upper() + ", ".join(text)[1:] + "."] if text else []
     return lines + ([f"Firm flow, of what the duty asks: {'; '.join(trips)}."] if trips else [])
 
 

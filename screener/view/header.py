@@ -15,6 +15,7 @@ from screener.view import data, names, requirement
 from screener.view import liquids as view_liquids
 from screener.view import speeds as view_speeds
 from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
+from screener.view.charts import today as today_chart
 from screener.view.data import Origin, head
 from screener.view.display import DASH, Display, percent, plain, word
 from screener.view.findings import Found, found
@@ -47,11 +48,12 @@ def screen(report: HeaderReport, origin: Origin) -> Screen:
             _table_of(already),
         ]
     blocks.append(Lines(data.CAUTIONS, Tone.QUIET))
-    return Screen(blocks, table, _data(report, display, origin, already))
+    content = _data(report, display, origin, already)
+    return Screen(blocks, table, content, charts=lambda: [today_chart.chart(report)])
 
 
 def _liquid(bench: Bench) -> str:
-    return ", ".join(
+    return "; ".join(
         liquid.name if np.isnan(liquid.temperature) else f"{liquid.name}, {liquid.temperature:.4g} degC"
         for liquid in bench.header.case.liquids
     )
@@ -88,6 +90,7 @@ def _today(bench: Bench, display: Display) -> Table:
     columns = [
         Column("duty", "duty", left=True),
         Column("level", "level", left=True, rank=0 if len(case.levels) > 1 else 9),
+        Column("liquid", "liquid", left=True, rank=3 if len(case.liquids) > 1 else 9),
         Column("asked", "asked", display.unit("flow")),
         Column("total_flow", "given", display.unit("flow")),
         Column("header_head", "header", display.unit("head")),
@@ -115,6 +118,7 @@ def _today(bench: Bench, display: Display) -> Table:
             [
                 word(_name(bench, state)),
                 word(names.level(case, state)),
+                word(names.liquid(case, state)),
                 display.cell("flow", state.asked if state.kind == Kind.DUTY else np.nan),
                 display.cell("flow", run.total[0, place]),
                 display.cell("head", run.header[0, place]),

@@ -45,7 +45,7 @@ def ranges(result: Operation, display: Display) -> Table:
     ]
     rows = []
     for place, found in enumerate(result.map.ranges):
-        who = [word(_letter(place)), word(_running(result, place))]
+        who = [word(_letter(place)), word(running(result, place))]
         for item in found:
             rows.append(
                 [
@@ -69,10 +69,11 @@ def ranges(result: Operation, display: Display) -> Table:
     return Table(columns, rows, note)
 
 
-def _running(result: Operation, place: int) -> str:
+def running(result: Operation, place: int) -> str:
+    """Names of the pumps of one combination of the map."""
     case = result.bench.header.case
-    running, new = result.map.combinations[place]
-    return names.combination(case, running, case.new_pump.count if new else 0)
+    rows, new = result.map.combinations[place]
+    return names.combination(case, rows, case.new_pump.count if new else 0)
 
 
 def _spot(result: Operation, spot: Spot | None) -> Cell:
@@ -92,7 +93,7 @@ def table(result: Operation, display: Display) -> Table:
         Column("flow", "flow", display.unit("flow")),
         Column("duty", "duty", left=True),
         *(
-            Column(_running(result, place), _letter(place), left=True, rank=_rank(result, place))
+            Column(running(result, place), _letter(place), left=True, rank=_rank(result, place))
             for place in range(len(result.map.combinations))
         ),
     ]
@@ -145,7 +146,7 @@ def as_data(result: Operation, display: Display) -> dict[str, Any]:
         "left_out": result.map.left_out,
         "combinations": [
             {
-                "running": _running(result, place),
+                "running": running(result, place),
                 "ranges": [
                     {
                         "lowest": display.number("flow", item.low),
@@ -164,7 +165,7 @@ def as_data(result: Operation, display: Display) -> dict[str, Any]:
                 "duties": _duties_at(result, flow),
                 "combinations": [
                     {
-                        "running": _running(result, place),
+                        "running": running(result, place),
                         "allowed": spot.ran.within,
                         "outside": _outside(result, spot),
                         "not_assessed": list(spot.ran.unknown),

@@ -10,6 +10,7 @@ from screener.changes.combination import BREACHES, Ran
 from screener.changes.operation import Choice, Operation
 from screener.view import data, names, operating_map
 from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
+from screener.view.charts import operating_map as chart
 from screener.view.data import Origin
 from screener.view.display import DASH, Display, tidy, word
 
@@ -39,7 +40,8 @@ def screen(result: Operation, origin: Origin) -> Screen:
         operating_map.table(result, display),
         Lines([OPERATOR, *data.CAUTIONS], Tone.QUIET),
     ]
-    return Screen(blocks, _flat(result, display), _data(result, display, origin))
+    content = _data(result, display, origin)
+    return Screen(blocks, _flat(result, display), content, charts=lambda: [chart.chart(result)])
 
 
 def _subject(result: Operation, display: Display) -> str:

@@ -9,12 +9,13 @@ import numpy as np
 
 from screener.model.finding import Outcome, Verdict
 from screener.screening.reach import Reason
-from screener.screening.shortlist import Shortlist
+from screener.screening.shortlist import RestoredAlone, Shortlist
 from screener.screening.today import naive
 from screener.view import data, names, requirement, why_not
-from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
+from screener.view.blocks import Block, Cell, Chart, Column, Heading, Lines, Screen, Table, Tone
+from screener.view.charts import trade_off
 from screener.view.data import Origin
-from screener.view.display import Display, plain, word
+from screener.view.display import DASH, Display, percent, plain, tidy, word
 from screener.view.findings import found, sentence, worst_first
 from screener.view.why_not import ranked_cells
 
@@ -23,6 +24,7 @@ if TYPE_CHECKING:
     from screener.view.closer import Nearer
 
 TOP = 10
+RANKED = "ACCEPTED, BY SCORE"
 
 
 def screen(
@@ -50,7 +52,7 @@ def screen(
     ]
     if accepted.size:
         blocks += [
-            Heading("ACCEPTED, BY SCORE", _more(accepted, shown)),
+            Heading(RANKED, _more(accepted, shown)),
             _ranked(result, display, accepted[:shown], words),
         ]
     else:
@@ -72,7 +74,30 @@ def screen(
     blocks.append(Lines(_notes(result, display), Tone.QUIET))
     blocks.append(Lines(data.CAUTIONS, Tone.QUIET))
     flat = _flat(result, display, words)
-    return Screen(blocks, flat, _data(result, display, origin, groups, words, everything=everything))
+    content = _data(result, display, origin, groups, words, everything=everything)
+    return Screen(
+        blocks,
+        flat,
+        content,
+        charts=lambda: _charts(result),
+        sheets=lambda: _sheets(result, display, origin, words),
+    )
+
+
+def _sheets(
+    result: Shortlist, display: Display, origin: Origin, words: Mapping[int, Nearer]
+) -> list[tuple[str, Table]]:
+    """Further tables, under their heading where they hold more rows of a table; loaded only here."""
+    from screener.view.sheets import sheets
+
+    accepted = np.flatnonzero(result.best.verdict == Verdict.ACCEPTED)
+    ranked = [(RANKED, _ranked(result, display, accepted, words))] if accepted.size else []
+    return [*ranked, *sheets(result, origin)]
+
+
+def _charts(result: Shortlist) -> list[Chart]:
+    found = trade_off.chart(result)
+    return [found] if found else []
 
 
 def _nearer(result: Shortlist, display: Display, near: Near | None) -> Mapping[int, Nearer]:
@@ -148,11 +173,15 @@ def _ranked(result: Shortlist, display: Display, rows: Any, words: Mapping[int, 
         cells = [word("="), word(label), *ranked_cells(result.references, display, row)]
         cells += [word("")] * (len(columns) - len(cells))
         table.append([Cell(cell.text, cell.value, Tone.QUIET) for cell in cells])
+    if result.alone is not None:
+        cells = [word("="), word(_restored_alone(result.alone)), *_alone_cells(result.alone)]
+        cells += [word("")] * (len(columns) - len(cells))
+        table.append([Cell(cell.text, cell.value, Tone.QUIET) for cell in cells])
     note = [
         *_references_fail(result, display),
-        "eff: useful head of the system over shaft energy, all pumps. share: load-share difference, points. "
-        "% BEP: lowest flow over best efficiency, any pump in any duty. NPSH: lowest NPSHa/NPSHr, trips "
-        "included.",
+        f"eff: useful head of the system over {data.energy_words(case)}, all pumps. share: load-share "
+        "difference, points. % BEP: lowest flow over best efficiency, any pump in any duty. NPSH: lowest "
+        "NPSHa/NPSHr, trips included.",
         *([why_not.HOLDS_NOTE] if words else []),
     ]
     return Table(columns, table, note)
@@ -163,20 +192,33 @@ def _as_new(result: Shortlist, row: int) -> Cell:
     if result.restored is None:
         return word("")
     verdict = data.VERDICTS[Verdict(int(result.restored.verdict[row]))]
-    return word(f"{verdict} {plain(float(result.restored.figures.score[row]), 1).text}")
+    figures = result.restored.figures
+    match = percent(figures.shutoff[row], 1, sign=True).text
+    return word(f"{verdict} {plain(float(figures.score[row]), 1).text}, shutoff {match} %")
+
+
+def _restored_alone(alone: RestoredAlone) -> str:
+    return "all restored, no new" + ("" if alone.meets else " (short)")
+
+
+def _alone_cells(alone: RestoredAlone) -> list[Cell]:
+    """Efficiency and energy, where every duty gets what it asks; else they compare with nothing."""
+    efficiency = float(alone.figures.efficiency[0]) if alone.meets else np.nan
+    energy = float(alone.figures.energy[0]) if alone.meets else np.nan
+    return [Cell(DASH), Cell(DASH), percent(efficiency, 1), plain(energy / 3.6e9, 0)]
 
 
 def _worn(result: Shortlist, display: Display) -> list[str]:
     """What the installed pumps have lost, how that was read, and what restoring them alone would give."""
     header = result.bench.header
-    worn = [f"{pump.tag} {100 * pump.head_loss:g} %" for pump in header.case.installed if pump.head_loss]
+    worn = [f"{pump.tag} {100 * pump.head_loss:.3g} %" for pump in header.case.installed if pump.head_loss]
     if not worn:
         return []
     state = header.states[header.rated]
-    gives = display.full("flow", result.restored_total)
+    gives = display.full("flow", np.nan if result.alone is None else result.alone.total)
     return [
         f"Head lost since new: {', '.join(worn)}. Every verdict holds for the whole curve lower and for "
-        "leakage inside the pump, the worse of the two shown.",
+        "leakage inside the pump, the worse of the two shown; ranked figures are those of the lower curve.",
         f"Restored, and without a new pump, the installed pumps give {gives} at "
         f"{names.where(header.case, state)}, of {display.text('flow', state.asked)} asked.",
     ]
@@ -226,7 +268,7 @@ def _flat(result: Shortlist, display: Display, words: Mapping[int, Nearer]) -> T
     rows = []
     for number, item in enumerate(items):
         failed = [f["criterion"] for f in item["findings"] if f["outcome"] == "fail"]
-        cells = [Cell("" if item[key] is None else str(item[key]), item[key]) for key in keys]
+        cells = [Cell(_reads(key, item[key]), item[key]) for key in keys]
         change = [word(words[number].change if number in words else "")] if words else []
         more = [*change, *why_not.holds(words, number)]
         rows.append([Cell(str(number + 1), number + 1), *cells, word(" ".join(failed)), *more])
@@ -236,6 +278,17 @@ def _flat(result: Shortlist, display: Display, words: Mapping[int, Nearer]) -> T
     ]
     return Table(columns, rows)
 
+
+def _reads(key: str, value: str | float | None) -> str:
+    """A figure of one row as it is read; to as many decimals as in the ranked table."""
+    if isinstance(value, float):
+        decimals = FLAT_DECIMALS.get(FLAT_UNITS.get(key, key))
+        return f"{value:.5g}" if decimals is None else f"{value:z.{decimals}f}"
+    return value or ""
+
+
+FLAT_DECIMALS = {"%": 1, "MWh/y": 0, "kWh/m3": 4, "score": 1, "restored_score": 1, "npsh_ratio": 2}
+"""By unit, or by key where there is none."""
 
 FLAT_UNITS = {
     "speed": "rpm",
@@ -286,6 +339,14 @@ def _data(
         },
         **listed,
         "out_of_reach": why_not.unreached_data(result, display) if everything else [],
+        "restored_alone": None
+        if result.alone is None
+        else {
+            "total_flow": display.number("flow", result.alone.total),
+            "meets_every_duty": result.alone.meets,
+            "efficiency": percent(float(result.alone.figures.efficiency[0])).value,
+            "energy_mwh_per_year": tidy(float(result.alone.figures.energy[0]) / 3.6e9),
+        },
         "references": [
             {
                 "same_as": case.installed[installed].tag,

@@ -13,7 +13,8 @@ from screener.model.finding import Outcome, Verdict
 from screener.screening.judge import worst_criterion
 from screener.screening.one import Trims
 from screener.view import data, names
-from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
+from screener.view.blocks import Block, Cell, Chart, Column, Heading, Lines, Screen, Table, Tone
+from screener.view.charts import trims as chart
 from screener.view.data import Origin
 from screener.view.display import Display, percent, plain, word
 from screener.view.explain import VERDICT_TONES, passing
@@ -46,7 +47,12 @@ def screen(result: Trims, by_law: ByLaw, origin: Origin) -> Screen:
         Lines(data.CAUTIONS, Tone.QUIET),
     ]
     content = _data(result, display, origin, accepted) | {"trim_laws": laws_data(by_law, display)}
-    return Screen(blocks, _flat(result, display), content)
+    return Screen(blocks, _flat(result, display), content, charts=lambda: _charts(result))
+
+
+def _charts(result: Trims) -> list[Chart]:
+    found = chart.chart(result)
+    return [found] if found else []
 
 
 def _abreast(verdict: Any, best: int) -> Any:

@@ -28,12 +28,14 @@ SHOWN = 4
 HOLDS = (
     Column("corners", "corners", left=True),
     Column("reading", "reading", left=True, rank=1),
+    Column("probability", "likely %", "%", rank=1),
 )
 """Columns on whether a verdict holds; `holds` fills them."""
 
 HOLDS_NOTE = (
     "corners: the verdict holds with curves as high or low as their tolerance allows, else which pump fails "
-    "first and when. reading: it holds with the curve read wrong, else in how many of the runs it turns."
+    "first and when. reading: it holds with the curve read wrong, else in how many of the runs it turns. "
+    "likely: probability that it passes under the assumptions that explain lists, with its sampling error."
 )
 
 
@@ -41,10 +43,11 @@ def holds(words: Mapping[int, Nearer], row: int) -> list[Cell]:
     """Whether the verdict of a candidate holds, where something was looked at closer."""
     if row not in words:
         return [word("")] * len(HOLDS) if words else []
-    return [
+    cells = [
         word(text, Tone.GOOD if text == "hold" else Tone.WARNING)
         for text in (words[row].corners, words[row].reading)
     ]
+    return [*cells, words[row].likely]
 
 
 def most_efficient(result: Shortlist, display: Display, groups: dict[Verdict, Any]) -> list[Block]:

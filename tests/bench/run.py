@@ -1,4 +1,4 @@
-"""Benchmark, run by hand: `python -m tests.bench.run [help] [intersection] [screen] [full] [size]`.
+"""Benchmark, by hand: `python -m tests.bench.run [help] [intersection] [screen] [workbook] [full] [size]`.
 
 Every ratio is taken between two things timed in this one process or its children, the median of some
 repeats of each in turn, since the speed of a machine varies more than what is measured here.
@@ -22,6 +22,7 @@ from screener.case.read import read_case
 from screener.catalog.compile import compile_table
 from screener.catalog.read import read
 from screener.changes.near import look_nearer
+from screener.export import xlsx
 from screener.files.document import load
 from screener.header.branch import BranchCurves, branch_curves, take
 from screener.header.left import Left
@@ -32,6 +33,7 @@ from screener.model.case import Case, Control, Drive, Liquid
 from screener.model.curves import Pumps, PumpTable
 from screener.screening.assess import CHUNK, Bench, set_up
 from screener.screening.shortlist import shortlist
+from screener.view.blocks import Cell, Column, Heading, Screen, Table, Tone
 from tests.bench import loop, synthetic
 
 DEMO = Path(__file__).parents[2] / "catalogs" / "osier-bank"
@@ -232,6 +234,40 @@ def size() -> None:
         )
 
 
+def workbook() -> None:
+    """A workbook of a ranked table with 5,000 rows, against xlsxwriter writing the bare numbers of it."""
+    import io
+
+    import xlsxwriter
+
+    rows = np.random.default_rng(5).uniform(-100, 2000, (5_000, 20)).round(4).tolist()
+    tones = [list(Tone)[number % len(Tone)] for number in range(20)]
+    columns = [Column("pump", "pump", left=True)]
+    columns += [Column(f"figure_{number}", f"figure {number}", "m") for number in range(20)]
+    cells = [
+        [
+            Cell(f"pump {number}", f"pump {number}"),
+            *(Cell(f"{value:.{place % 3}f}", value, tones[place]) for place, value in enumerate(row)),
+        ]
+        for number, row in enumerate(rows)
+    ]
+    table = Table(columns, cells)
+    ranked = Screen([Heading("RANKED"), table], table, {})
+
+    def bare() -> None:
+        book = xlsxwriter.Workbook(io.BytesIO(), {"in_memory": True})
+        sheet = book.add_worksheet()
+        for number, row in enumerate(rows):
+            for place, value in enumerate(row):
+                sheet.write_number(number, place, value)
+        book.close()
+
+    turns = [(seconds(lambda: xlsx.render(ranked), 1), seconds(bare, 1)) for _ in range(5)]
+    ours, theirs = (statistics.median(times) for times in zip(*turns, strict=True))
+    what = "workbook of 5,000 rows / bare xlsxwriter numbers"
+    show(what, f"{ours / theirs:.2f}", "at most 2", ours / theirs <= 2)
+
+
 def child(models: int) -> None:
     """Screen a catalog of some size; prints seconds and peak memory in GB."""
     case, table = demo(), synthetic.table(models)
@@ -253,6 +289,8 @@ def main(wanted: list[str]) -> None:
     alone = intersection(bench) if every or {"intersection", "screen"} & set(wanted) else np.nan
     if every or "screen" in wanted:
         screen(bench, case, alone)
+    if every or "workbook" in wanted:
+        workbook()
     if every or "full" in wanted:
         full(case)
     if every or "size" in wanted:

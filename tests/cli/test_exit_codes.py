@@ -70,9 +70,12 @@ def test_a_diameter_that_fails_is_0_where_another_passes(screener: Screener, pla
         (("explain", "CASE", "E", "--diameter", "200"), "E states no diameter"),
         (
             ("shortlist", "CASE", "--format", "yaml"),
-            'unknown format "yaml" (one of table, csv, json, markdown)',
+            'unknown format "yaml" (one of table, csv, html, json, markdown)',
         ),
-        (("shortlist", "CASE", "--output", "list.xls"), 'unknown suffix ".xls" (one of .csv, .json, .md)'),
+        (
+            ("shortlist", "CASE", "--output", "list.xls"),
+            'unknown suffix ".xls" (one of .csv, .html, .json, .md, .pdf, .png, .svg, .xlsx)',
+        ),
         (("header", "CASE", "--output", "list"), 'unknown suffix ""'),
         (("shortlist", "CASE", "--tops", "3"), "--tops"),
         (("shortlist", "CASE", "--top", "0"), "--top"),

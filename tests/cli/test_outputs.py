@@ -77,7 +77,7 @@ def test_force_replaces_a_file_but_no_folder(screener: Screener, case: Path) -> 
 
 def test_an_unknown_suffix_among_outputs_and_none_is_written(screener: Screener, case: Path) -> None:
     before = _files()
-    result = screener("header", case, "--output", "a.json", "--output", "a.pdf")
+    result = screener("header", case, "--output", "a.json", "--output", "a.docx")
     assert (result.code, result.out) == (2, "")
     assert _files() == before
 

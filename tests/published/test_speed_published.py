@@ -68,7 +68,7 @@ def test_the_speed_for_a_quarter_less_flow_follows_the_parabola(
 
 
 def test_ratios_of_the_affinity_laws(pumps_of: PumpsOf) -> None:
-    # US DOE-HDBK-1012/3-92, centrifugal pumps [V]: twice the speed, 400 to 800 gpm, 48 to 192 ft, 45 to 360 kW
+    # US DOE-HDBK-1012/3-92, centrifugal pumps [V]: twice the speed, 400 to 800 gpm, 48 to 192 ft, power x 8
     fast = at_speed(pumps_of([([0, 200, 400], [60, 57, 48])]), ratio=np.array([2.0]))
     assert fast.curves.end[0] == 800
     assert fast.curves.head[0, -1] == pytest.approx(192)

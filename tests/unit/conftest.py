@@ -121,7 +121,7 @@ def _run(*, candidates: int = 1, states: int = 4, installed: int = 2, **changes:
     c, s, width = candidates, states, 1 + installed
     shapes = {"header": (c, s), "total": (c, s), "spare_head": (c, width)}
     shapes |= {"shutoff_match": (c, installed), "load_share": (c, installed), "runs": (s, width)}
-    shapes |= {"opening_speed": (c, s), "least_speed": (c, s)}
+    shapes |= {"suction_pressure": (s, width), "opening_speed": (c, s), "least_speed": (c, s)}
     usual = {"run": (c, s, width), "conditions": (s,), "ratings": (c, width), "bounds": (c, width)}
     usual["pumps"] = (c,)
     rated = {RATED[name]: value for name, value in changes.get("ratings", {}).items() if name in RATED}

@@ -297,3 +297,11 @@ def test_a_replaced_pump_runs_today_and_not_beside_the_new_one(
     assert found.conditions.runs[place].tolist() == [True, True, False]
     assert evaluate.today(bench.header).total[0, place] == pytest.approx(0.15)
     assert today(bench.header, replaced=False).conditions.runs[place].tolist() == [True, True, False]
+
+
+def test_the_suction_head_of_its_own_place_adds_to_the_shutoff_pressure(plant: Plant, duty: MakeDuty) -> None:
+    case = plant(duty((0, 1), flow=0.2, rated=True))
+    lower = replace(case, new_pump=replace(case.new_pump, branch=Branch(suction_head=5.0)))
+    before, after = (prepare(made, temperature_rise=8.0).conditions for made in (case, lower))
+    # 5 m of water at 1000 kg/m3
+    assert (after.suction_pressure - before.suction_pressure)[0] == pytest.approx([5 * 9806.65, 0, 0])

@@ -109,7 +109,8 @@ def test_restored_is_the_case_as_it_was(worn: Case, case: Case, table: PumpTable
     assert result.restored.verdict.tolist() == before.verdict.tolist()
     assert result.restored.figures.score == pytest.approx(before.figures.score, nan_ok=True)
     today = set_up(restored(worn))
-    assert result.restored_total == pytest.approx(today.today.total[0, today.header.rated])
+    assert result.alone is not None
+    assert result.alone.total == pytest.approx(today.today.total[0, today.header.rated])
 
 
 def test_restoring_is_told_as_a_change(worn: Case, table: PumpTable) -> None:

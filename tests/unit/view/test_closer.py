@@ -230,9 +230,11 @@ def test_the_shortlist_shows_what_holds_and_what_would_help(result: Shortlist, n
     accepted = _table(screen, "ACCEPTED, BY SCORE")
     keys = [column.key for column in accepted.columns]
     first, reference = accepted.rows[0], accepted.rows[-1]
-    assert keys[-2:] == ["corners", "reading"]
-    assert [cell.text for cell in first[-2:]] == ["new day", "1 of 4"]
-    assert [cell.text for cell in reference[-2:]] == ["", ""]
+    assert keys[-3:] == ["corners", "reading", "probability"]
+    assert [cell.text for cell in first[-3:-1]] == ["new day", "1 of 4"]
+    assert first[-1].value == pytest.approx(100 * near.sampled.probability[0])
+    assert 0 < near.sampled.probability[0] < 1
+    assert [cell.text for cell in reference[-3:]] == ["", "", ""]
     rejected = _table(screen, "REJECTED, NEAREST FIRST")
     assert [cell.text for cell in rejected.rows[-1] if cell.text] == ["would pass with", "no single change"]
 
