@@ -27,7 +27,7 @@ from screener.screening.shortlist import requirements
 class Places:
     """States in which the new pump is at an extreme, -1 where one of them has no figure.
 
-    normal  : of the duty of most hours, -1 where a duty states none
+    normal  : of most hours, -1 where a duty states none
     peak, lowest : its largest and smallest flow in a duty;  runout : its largest flow in any state
     strongest : its largest shaft power;  tightest : its lowest NPSH available over required
     start   : duty in which the others hold the header highest while it starts
@@ -173,17 +173,13 @@ def _highest(values: Floats, among: Bools) -> int:
 
 
 def _most_hours(bench: Bench, duty: Bools) -> int:
-    """The duty of most hours with the new pump: the state of its largest share, then of most static head."""
+    """The state of most hours with the new pump, of equal ones that of most static head."""
     header = bench.header
     hours = header.conditions.hours * header.conditions.share_of_hours
     places = [int(place) for place in np.flatnonzero(duty)]
     if np.isnan(hours[places]).any():
         return -1
-    total = {
-        place: hours[[p for p in places if header.states[p].duty == header.states[place].duty]].sum()
-        for place in places
-    }
-    return max(places, key=lambda place: (total[place], hours[place], header.states[place].static))
+    return max(places, key=lambda place: (hours[place], header.states[place].static))
 
 
 def _under_minimum(explained: Explained) -> bool | None:

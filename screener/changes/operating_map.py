@@ -49,7 +49,8 @@ class OperatingMap:
     """Which combination may run at which header flow, throttled.
 
     flows  : (f,) [m3/s] rising;  combinations : k;  left_out : combinations not shown
-    levels : rows of the case, of highest and of lowest static head;  liquid : row of the case
+    levels : rows of the case, of highest and of lowest static head;  liquids : those of the duties, the
+             worst of which rules
     spots  : f rows of k;  ranges : for each combination, rising
     """
 
@@ -57,7 +58,7 @@ class OperatingMap:
     combinations: tuple[Combination, ...]
     left_out: int
     levels: tuple[int, ...]
-    liquid: int
+    liquids: tuple[int, ...]
     spots: tuple[tuple[Spot, ...], ...]
     ranges: tuple[tuple[Range, ...], ...]
 
@@ -65,7 +66,7 @@ class OperatingMap:
 def operating_map(
     plant: Plant, bench: Bench, tried: Sequence[Sequence[Combination]], chosen: Sequence[Combination]
 ) -> OperatingMap:
-    """Run combinations at round header flows, throttled, at the highest and the lowest static head.
+    """Run combinations at round header flows, throttled, at both extremes of static head, in every liquid.
 
     tried : in each duty;  chosen : those that must be shown, the rest as far as there is room
     """
@@ -84,15 +85,22 @@ def operating_map(
     shown = list(dict.fromkeys([*(key_of(alike, item) for item in chosen), *every]))[:MAPPED]
     combinations = sorted((every[key] for key in shown), key=lambda item: (item[1], len(item[0]), item[0]))
     like = replace(rated, levels=levels, bypass=(), hours=np.nan, control=Control.THROTTLED)
+    liquids = tuple(dict.fromkeys(duty.liquid for duty in case.duties))
     most, probes = _reach(plant, bench, replace(like, levels=(low,)), combinations)
     flows = round_flows(max(most), case.display["flow"], [duty.flow for duty in case.duties])
     tested: list[dict[float, Spot]] = [{} for _ in combinations]
 
     def test(wanted: Iterable[tuple[int, float]]) -> None:
         places = [(place, flow) for place, flow in wanted if flow not in tested[place]]
-        duties = [replace(run_as(like, combinations[place]), flow=flow) for place, flow in places]
-        for (place, flow), rans in zip(places, every_run(plant, duties) if duties else [], strict=True):
-            tested[place][flow] = _ruling(rans)
+        duties = [
+            replace(run_as(like, combinations[place]), flow=flow, liquid=liquid)
+            for place, flow in places
+            for liquid in liquids
+        ]
+        found = every_run(plant, duties) if duties else []
+        for number, (place, flow) in enumerate(places):
+            rans = found[number * len(liquids) : (number + 1) * len(liquids)]
+            tested[place][flow] = _ruling([ran for one in rans for ran in one])
 
     everywhere = range(len(combinations))
     test([(place, flow) for place in everywhere for flow in (*flows, *probes[place])])
@@ -105,7 +113,7 @@ def operating_map(
         combinations=tuple(combinations),
         left_out=len(every) - len(combinations),
         levels=levels,
-        liquid=rated.liquid,
+        liquids=liquids,
         spots=tuple(tuple(tested[place][flow] for place in everywhere) for flow in flows),
         ranges=tuple(tuple(_ranges(spots)) for spots in tested),
     )

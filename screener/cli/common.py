@@ -78,8 +78,8 @@ def check_outputs(name: str, outputs: list[Path] | None, force: bool) -> None:
     atomic.check(outputs or [], force=force)
 
 
-def emit(screen: Screen, name: str, outputs: list[Path] | None, force: bool) -> None:
-    """Write the files asked for, then the screen to stdout."""
+def emit(screen: Screen, name: str, outputs: list[Path] | None, force: bool, *, shown: bool = True) -> None:
+    """Write the files asked for, then the screen to stdout where it is to be shown."""
     from screener.export import formats
     from screener.files import atomic
 
@@ -90,6 +90,8 @@ def emit(screen: Screen, name: str, outputs: list[Path] | None, force: bool) -> 
         )
         for path in outputs:
             print(f"wrote {path}", file=sys.stderr)
+    if not shown:
+        return
     if name == "table":
         from rich.console import Console
 

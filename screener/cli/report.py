@@ -43,6 +43,6 @@ def report(
     with common.progress() as progress:
         result = put_together(loaded.case, loaded.catalog, accepted=pumps, progress=progress)
     screen = view.screen(result, Origin(loaded.files), top=top, everything=everything)
-    common.emit(screen, format, output, force)
+    common.emit(screen, format, output, force, shown=not output or format != "table")
     if not (result.shortlist.best.verdict == Verdict.ACCEPTED).any():
         raise typer.Exit(ExitCode.NOTHING_PASSED)

@@ -20,9 +20,10 @@ class Requirement:
 
     header   : [m] header head at which the system takes the whole duty
     supplied : [m3/s] what the installed pumps give there; NaN where one of them is past its data
-    flow     : [m3/s] of each new pump: 0 where the installed ones suffice, NaN where that is not known
+    flow     : [m3/s] delivered by each new pump: 0 where the others suffice, NaN where it is not known
     head     : [m] of the new pump itself: the header, and its own branch at that flow
     past     : row of the installed pump that is past its data, -1 where none is
+    bypass   : [m3/s] that goes through the new pump beside `flow`, and is taken back
     """
 
     header: float
@@ -30,6 +31,7 @@ class Requirement:
     flow: float
     head: float
     past: int
+    bypass: float = 0.0
 
 
 def requirement(
@@ -40,6 +42,7 @@ def requirement(
     asked: float,
     count: int,
     place: Branch,
+    bypass: float = 0.0,
 ) -> Requirement:
     """The true duty of each of `count` new pumps: the rest of the flow, at the head that takes."""
     header = system.head(curve, asked)
@@ -50,8 +53,9 @@ def requirement(
     flow = max((asked - supplied) / count, 0.0)
     if past >= 0 and _at_least(installed, rows) >= asked:
         flow = 0.0
-    lost = loss_head(place.suction, flow=np.array(flow)) + loss_head(place.discharge, flow=np.array(flow))
-    return Requirement(header, supplied, flow, header + float(lost) - place.suction_head, past)
+    lost = loss_head(place.suction, flow=np.array(flow + bypass))
+    lost += loss_head(place.discharge, flow=np.array(flow))
+    return Requirement(header, supplied, flow, header + float(lost) - place.suction_head, past, bypass)
 
 
 def _at_least(installed: BranchCurves, rows: Ints) -> float:

@@ -530,7 +530,9 @@ def _own_speeds(
         smallest = smallest_flow(
             there.pumps, heat_capacity=header.heat_capacity, temperature_rise=header.temperature_rise
         )
-        opening[:, column], least[:, column] = usable_speeds(there.pumps, place, left, minimum=smallest)
+        opening[:, column], least[:, column] = usable_speeds(
+            there.pumps, place, left, minimum=smallest, bypass=there.bypass
+        )
     return opening, least
 
 

@@ -121,6 +121,7 @@ def requirements(bench: Bench) -> dict[int, Requirement]:
             asked=state.asked,
             count=state.new,
             place=header.case.new_pump.branch,
+            bypass=state.bypass[0] if state.bypass else 0.0,
         )
         for place, state in enumerate(header.states)
         if state.kind == Kind.DUTY and state.new
@@ -132,7 +133,7 @@ def asked(bench: Bench, needs: Mapping[int, Requirement]) -> list[Need]:
     header = bench.header
     return [
         Need(
-            flow=need.flow,
+            flow=need.flow + need.bypass if need.flow > 0 else need.flow,
             head=need.head,
             viscosity=header.standing[place].setting.viscosity,
             held=header.states[place].speed == Speed.HELD,

@@ -92,11 +92,12 @@ class HeaderReport:
 def header_report(case: Case) -> HeaderReport:
     """Work out how the installed pumps run today, and what the header asks of a new pump.
 
-    `highest_header` is the highest header head [m] without the new pump in any duty that it shares.
+    `highest_header` is the highest header head [m] without the new pump in any duty that it shares. Where the
+    new pump replaces one, what it must do is told beside the others alone.
     """
     bench = set_up(case)
     needs = requirements(bench)
-    heads = [float(bench.today.header[0, place]) for place in needs]
+    heads = [float(bench.without.header[0, place]) for place in needs]
     return HeaderReport(
         bench=bench,
         needs=needs,
@@ -125,7 +126,13 @@ def usable(header: Header) -> Iterator[Usable]:
             rest = [other for other in state.running if other != row]
             beside = left_of(case, state, there, rest, cells=400, throttled=False, count=1)
             one = take_pumps(there.pumps, np.array([row]))
-            opening, least = usable_speeds(one, pump.branch, beside, minimum=there.minimum[row : row + 1])
+            opening, least = usable_speeds(
+                one,
+                pump.branch,
+                beside,
+                minimum=there.minimum[row : row + 1],
+                bypass=float(there.bypass[row]),
+            )
             low, high = speed_limits(one, [pump.drive])
             now = float(header.alone[place].ratio[row])
             yield Usable(
@@ -151,7 +158,7 @@ def _combinations(header: Header) -> list[tuple[int, ...]]:
 
 def naive(bench: Bench, place: int) -> Naive:
     """What the new pump's duty is commonly taken for in one state."""
-    header, today = bench.header, bench.today
+    header, today = bench.header, bench.without
     state = header.states[place]
     rows = np.array(state.running, np.int64)
     rated = np.array([header.case.installed[row].rated_flow for row in rows])

@@ -131,7 +131,8 @@ def machine(w: Writer) -> Iterator[Field]:
     yield w.amount("diameter_maximum", "impeller, maximum", "length", w.pumps.maximum[0], CATALOG)
     yield w.amount("diameter_minimum", "impeller, minimum", "length", w.pumps.minimum[0], CATALOG)
     shutoff, summit = float(ratings.shutoff[0, 0]), float(ratings.summit[0, 0])
-    rise = percent(shutoff / at(w.run.head, w.rated) - 1, 1)
+    turned = float(in_state(w.run.bounds.speed, w.rated)[0, 0])
+    rise = percent(shutoff * turned**2 / at(w.run.head, w.rated) - 1, 1)
     yield w.amount("shutoff_head", "shutoff head", "head", shutoff, curve, NO_SHUTOFF)
     yield w.amount("highest_head", "highest head of the curve", "head", summit, curve, NO_SHUTOFF)
     unknown = NO_SHUTOFF if np.isnan(shutoff) else ""

@@ -63,6 +63,8 @@ class Display:
         unit = self._units[quantity]
         if quantity in ("head", "npsh"):
             return 1 if unit == "ft" else 2
+        if unit == "L/s":
+            return 1
         return {"flow": 3, "pressure": 3, "power": 3}[quantity] if unit in FINE else DECIMALS[quantity]
 
 

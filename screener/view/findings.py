@@ -110,7 +110,7 @@ def amount(criterion: Criterion, display: Display, value: float, *, finer: bool 
         return Cell("none" if np.isposinf(value) else DASH)
     if finer:
         kept = amount(criterion, display, value).value
-        return Cell(f"{kept:.7g}", kept)
+        return Cell(f"{kept:.5g}", kept)
     if criterion.unit == "%":
         near = 0 < abs(value - 1) < 0.002  # 99.87 is no 99.9
         return Cell(f"{100 * value:z.{2 if near else 1}f}", tidy(100 * value))

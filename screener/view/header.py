@@ -109,11 +109,12 @@ def _today(bench: Bench, display: Display) -> Table:
     ]
     rows, seen = [], set()
     for place, state in enumerate(bench.header.states):
-        key = (state.kind, state.running, state.level, state.asked if state.kind == Kind.DUTY else 0.0)
-        if key in seen or not state.running:
+        gone = run.conditions.runs[place].tobytes()
+        key = (state.kind, gone, state.level, state.liquid, state.asked if state.kind == Kind.DUTY else 0.0)
+        running = [int(pump) for pump in np.flatnonzero(run.conditions.runs[place]) if pump]
+        if key in seen or not running:
             continue
         seen.add(key)
-        running = [1 + row for row in state.running]
         rows.append(
             [
                 word(_name(bench, state)),

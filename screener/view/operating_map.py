@@ -112,6 +112,9 @@ def table(result: Operation, display: Display) -> Table:
     drives = [case.new_pump.drive, *(pump.drive for pump in case.installed)]
     if any(drive.varies for drive in drives):
         note.append("Pumps that can vary their speed run at their speed at load.")
+    liquids = [case.liquids[row].name for row in result.map.liquids]
+    if len(liquids) > 1:
+        note.append(f"A cell holds for every liquid pumped ({', '.join(liquids)}): the worst of them rules.")
     return Table(columns, rows, note)
 
 
@@ -135,7 +138,7 @@ def as_data(result: Operation, display: Display) -> dict[str, Any]:
     """The map and the ranges as data."""
     case = result.bench.header.case
     statics = [
-        system_curve(case.system, case.levels[row], case.liquids[result.map.liquid]).static
+        system_curve(case.system, case.levels[row], case.liquids[result.map.liquids[0]]).static
         for row in result.map.levels
     ]
     return {

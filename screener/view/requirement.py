@@ -73,14 +73,14 @@ def _in_words(report: HeaderReport, display: Display, rated: int) -> list[tuple[
         reason = f"header at {display.full('head', need.header)}, and {through} through its own branch"
         pairs.append((_duty(display, need.flow, need.head), reason))
         if np.isfinite(simple.missing_flow):
-            runs = float(np.nansum(report.bench.today.flow[0, rated, 1:])) > 0
+            runs = float(np.nansum(report.bench.without.flow[0, rated, 1:])) > 0
             reason = "the flow missing today" + (f": {_fall_back(report, display, rated)}" if runs else "")
             pairs.append((f"not {_duty(display, simple.missing_flow, simple.missing_head)}", reason))
     if np.isfinite(simple.rated_flow):
         reason = "the duty less the rated flows of the installed pumps"
         pairs.append((f"not {_duty(display, simple.rated_flow, simple.rated_head)}", reason))
     if report.highest_header > np.nan_to_num(need.head):
-        heads = report.bench.today.header[0]
+        heads = report.bench.without.header[0]
         highest = max(report.needs, key=lambda place: float(np.nan_to_num(heads[place])))
         reason = f"or its check valve stays shut: {names.where(header.case, header.states[highest])}"
         pairs.append((f"shutoff above {display.full('head', report.highest_header)}", reason))
@@ -95,11 +95,15 @@ def _fall_back(report: HeaderReport, display: Display, rated: int) -> str:
     """How far the installed pumps fall back when the header is lifted to what the duty needs."""
     header, need = report.bench.header, report.needs[rated]
     tags = names.combination(header.case, header.states[rated].running).replace(" + ", ", ")
-    today = float(np.nansum(report.bench.today.flow[0, rated, 1:]))
+    today = float(np.nansum(report.bench.without.flow[0, rated, 1:]))
     low = display.text("head", report.naive[rated].missing_head)
+    if not need.supplied < today:
+        return f"the header stands at {low} without it"
+    falls = "falls" if len(header.states[rated].running) == 1 else "fall"
     return (
-        f"to lift the header from {low} to {display.full('head', need.header)}, {tags} fall back from "
-        f"{display.text('flow', today)} to {display.full('flow', need.supplied)} together"
+        f"to lift the header from {low} to {display.full('head', need.header)}, {tags} {falls} back from "
+        f"{display.text('flow', today)} to {display.full('flow', need.supplied)}"
+        + (" together" if falls == "fall" else "")
     )
 
 

@@ -15,8 +15,9 @@ from scipy.optimize import brentq
 
 from screener.header.branch import BranchCurves
 from screener.header.left import Left
+from screener.hydraulics.interpolate import station_slopes
 from screener.model.arrays import STATIONS, Floats
-from screener.model.case import Loss
+from screener.model.case import Branch, Loss
 from screener.model.curves import Pumps
 from screener.screening.header import Header
 
@@ -144,27 +145,98 @@ def reader(pumps: Pumps, row: int) -> Reader:
     )
 
 
-def screen(header: Header, pumps: Pumps, new: BranchCurves, networks: Sequence[Network]) -> Floats:
+@dataclass(frozen=True)
+class Like:
+    """What pumps are like in some states: the new ones and their branch curves, the installed ones."""
+
+    pumps: Pumps
+    new: BranchCurves
+    installed: Pumps
+
+
+@dataclass(frozen=True)
+class Turned:
+    """One installed pump that holds the flow of a state by its speed."""
+
+    row: int
+    curve: CubicHermiteSpline
+    lowest: float
+    asked: float
+    head: float
+
+
+def turned(header: Header, state: int, like: Like) -> Turned | None:
+    """The installed pump whose speed holds the flow of a state, if it is so held."""
+    if not header.conditions.held[state]:
+        return None
+    row = next(row for row, pump in enumerate(header.case.installed) if pump.drive.varies)
+    curves = like.installed.curves
+    slope = station_slopes(curves.head[row : row + 1])[0]
+    drive = header.case.installed[row].drive
+    wanted, asked = header.conditions.wanted_head[state], header.conditions.asked[state]
+    return Turned(row, curve(curves.head[row], slope, curves.span[row]), drive.lowest, asked, wanted)
+
+
+def held(branch: CubicHermiteSpline, low: float, end: float, state: Network, by: Turned, place: Branch):
+    """Flow of the new pump, of the pump that turns, and its speed; NaN where its range does not do it."""
+
+    def above(flow: float) -> float:
+        return float(branch(flow)) - by.head
+
+    if above(low) <= 0 or above(end) >= 0:
+        return np.nan, np.nan, np.nan
+    flow = brentq(above, low, end, xtol=1e-9 * end)
+    others = sum(len(pump.rows) * pump(by.head) for pump in state.supplies if by.row not in pump.rows)
+    rest = by.asked - flow - others
+    head = by.head - place.suction_head + _lost(place.suction, rest) + _lost(place.discharge, rest)
+
+    def over(ratio: float) -> float:
+        return ratio**2 * float(by.curve(rest / ratio)) - head
+
+    if rest <= 0 or over(1.0) <= 0 or over(by.lowest) >= 0:
+        return np.nan, np.nan, np.nan
+    return flow, rest, brentq(over, by.lowest, 1.0, xtol=1e-10)
+
+
+def screen(header: Header, likes: Sequence[Like], networks: Sequence[Network]) -> Floats:
     """Run pumps through every state, one by one, and hold them against six criteria.
 
+    likes : for each state what the pumps are like in it, the same object where they are alike
     Criteria for every running pump: end of curve, minimum flow, allowable region, motor, NPSH margin; and
     the flow that the duty asks for. Returns the largest shortfall of each pump, (c,).
     """
     case, conditions = header.case, header.conditions
-    beside = [reader(case.pumps, row) for row in range(len(case.pumps))]
-    worst = np.zeros(len(pumps))
-    for row in range(len(pumps)):
-        own = reader(pumps, row)
-        branch = curve(new.head[row], new.slope[row], new.span[row])
+    kinds = {id(like): like for like in likes}
+    beside = {
+        kind: [reader(like.installed, row) for row in range(len(case.pumps))] for kind, like in kinds.items()
+    }
+    turning = [turned(header, number, like) for number, like in enumerate(likes)]
+    worst = np.zeros(len(likes[0].pumps))
+    for row in range(len(worst)):
+        own = {kind: reader(like.pumps, row) for kind, like in kinds.items()}
+        branches = {
+            kind: curve(like.new.head[row], like.new.slope[row], like.new.span[row])
+            for kind, like in kinds.items()
+        }
         for number, (state, network) in enumerate(zip(header.states, networks, strict=True)):
-            flow, head = meeting(branch, new.low[row], new.end[row], network)
+            kind, new, by = id(likes[number]), likes[number].new, turning[number]
+            ratio, rest = 1.0, 0.0
+            if by is None:
+                flow, head = meeting(branches[kind], new.low[row], new.end[row], network)
+            else:
+                place = case.installed[by.row].branch
+                flow, rest, ratio = held(branches[kind], new.low[row], new.end[row], network, by, place)
+                head = by.head
             if np.isnan(flow):
                 worst[row] = 1.0
                 continue
-            running = [(own, flow, case.new_pump.branch, np.inf)]
+            running = [(own[kind], flow, case.new_pump.branch, np.inf)]
             for place in state.running:
                 pump = case.installed[place]
-                running.append((beside[place], network.supply_of(place)(head), pump.branch, pump.motor))
+                if by is not None and place == by.row:
+                    running.append((beside[kind][place], rest / ratio, pump.branch, pump.motor / ratio**3))
+                    continue
+                running.append((beside[kind][place], network.supply_of(place)(head), pump.branch, pump.motor))
             total = sum(flow for _, flow, _, _ in running)
             liquid, level = case.liquids[case.duties[state.duty].liquid], case.levels[state.level]
             common = _lost(case.suction_friction, total)

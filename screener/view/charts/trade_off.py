@@ -10,6 +10,7 @@ from screener.model.finding import Candidates, Verdict
 from screener.screening.shortlist import Shortlist
 from screener.view.blocks import Axis, Chart, Mark, Panel, Role, Series
 from screener.view.charts import parts
+from screener.view.data import energy_words
 
 BEST = 10
 """Accepted pumps that are named."""
@@ -41,7 +42,7 @@ def chart(result: Shortlist) -> Chart | None:
         title="Efficiency against how well a new pump matches",
         x=x,
         panels=[Panel(y, [*series, line])],
-        note="System efficiency: useful head of the system over shaft energy, all pumps, by hours. "
+        note=f"System efficiency: useful head of the system over {energy_words(case)}, all pumps, by hours. "
         f"The {BEST} best accepted pumps are named. Pumps without one of the two figures are not drawn.",
         told=f"The best accepted, mismatch and efficiency: {parts.told(series, Axis('', '%'), y)}.",
     )

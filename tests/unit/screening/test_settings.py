@@ -19,6 +19,7 @@ from screener.screening import evaluate
 from screener.screening.assess import judged, set_up
 from screener.screening.evaluate import run, today
 from screener.screening.header import prepare
+from screener.screening.today import header_report
 
 Plant, MakeDuty = Callable[..., Case], Callable[..., Duty]
 
@@ -305,3 +306,27 @@ def test_the_suction_head_of_its_own_place_adds_to_the_shutoff_pressure(plant: P
     before, after = (prepare(made, temperature_rise=8.0).conditions for made in (case, lower))
     # 5 m of water at 1000 kg/m3
     assert (after.suction_pressure - before.suction_pressure)[0] == pytest.approx([5 * 9806.65, 0, 0])
+
+
+def test_a_bypass_takes_speed_before_the_valve_opens(plant: Plant, duty: MakeDuty, new: Pumps) -> None:
+    loss = Loss((100.0,), (2.0,))
+    held = replace(duty((0, 1), flow=0.2, control=Control.SPEED, rated=True), bypass=(0.03, 0.0, 0.0))
+    case = with_drive(plant(held), Drive(0.5, 1.0))
+    case = replace(case, new_pump=replace(case.new_pump, branch=Branch(suction=loss)))
+    found = run(prepare(case, temperature_rise=8.0), new)
+    place = int(np.flatnonzero(found.conditions.held)[0])
+    alone = brentq(lambda h: 2 * of_installed(h) - sqrt((h - 20) / 400), 30, 50, xtol=1e-13)
+    # through the pump 0.03 m3/s even before it delivers: r^2 48 - 2000 0.03^2 - 100 0.03^2 = header head
+    assert found.opening_speed[0, place] == pytest.approx(sqrt((alone + 2100 * 0.03**2) / 48), rel=1e-6)
+    # its minimum flow, 0.02 m3/s, is less than that already
+    assert found.least_speed[0, place] == found.opening_speed[0, place]
+
+
+def test_what_replaces_a_pump_is_told_beside_the_others_alone(plant: Plant, duty: MakeDuty) -> None:
+    case = plant(duty((0,), flow=0.08, rated=True), shutoff=(50.0, 50.0))
+    case = replace(case, new_pump=replace(case.new_pump, replaces=1))
+    report = header_report(case)
+    # P-1 alone holds 0.08 at 50 - 2000 * 0.08^2 = 37.2 m; with the pump that goes it is 50 - 2000 * 0.04^2
+    assert report.highest_header == pytest.approx(37.2)
+    assert report.naive[report.bench.header.rated].missing_head == pytest.approx(37.2)
+    assert report.bench.today.header[0, report.bench.header.rated] == pytest.approx(46.8)

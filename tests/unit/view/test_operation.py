@@ -67,7 +67,7 @@ def shown(case: Case) -> Callable[..., Screen]:
                 combinations=(((0,), False), ((0, 1), False)),
                 left_out=1,
                 levels=(0, 2),
-                liquid=0,
+                liquids=(0,),
                 spots=((Spot(PAST, -1), Spot(BOTH, -1)), (Spot(PAST, 0), Spot(LOW, 2))),
                 ranges=((), (Range(1047 * M3H, 2621 * M3H, Spot(LOW, -1), None),)),
             ),
