@@ -483,3 +483,21 @@ def test_duties_held_by_speed_need_nothing_special(plant: Loaded) -> None:
     assert (both.within, code(both)) == (False, "high P-1")  # 3509 of the fixed one at that head
     assert 2400 * ((52.5 - head) / 10.5) ** 0.5 > 1.3 * 2500
     assert code(single) == "past P-2"
+
+
+def test_the_worst_liquid_rules_a_cell_of_the_map(load: Callable[..., Loaded]) -> None:
+    """One pump at 2500 gives 41.1 m at 86 %: 325 kW of water, 488 kW at 1500 kg/m3, on a motor of 355 kW."""
+    dense = '[[liquid]]\nname = "dense"\ndensity = "1500 kg/m3"\nviscosity = "1 cSt"\n'
+    dense += 'vapour_pressure = "2000 Pa"\nheat_capacity = "4.18 kJ/(kg K)"\n\n[system]'
+    flow = ("flow = 2400", "flow = 2500")
+    water = screener.operation(load(flow).case).map
+    both = screener.operation(
+        load(flow, ("[system]", dense), ('name = "least"', 'name = "least"\nliquid = "dense"')).case
+    ).map
+    for found, within, liquids in ((water, True, (0,)), (both, False, (0, 1))):
+        place = next(place for place, flow in enumerate(found.flows) if round(flow * HOUR) == 2500)
+        one = next(number for number, item in enumerate(found.combinations) if len(item[0]) == 1)
+        spot = found.spots[place][one]
+        assert found.liquids == liquids
+        assert spot.ran.within is within, code(spot.ran)
+    assert code(spot.ran).startswith("motor")
