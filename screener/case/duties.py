@@ -151,7 +151,7 @@ def _check_speed(q: Quantities, path: KeyPath, running: Combinations, fleet: Fle
     """Where the pumps hold the flow by their speed, one that can must run in every combination."""
     for rows, new in zip(*running, strict=True):
         places = [0] * new + [1 + row for row in rows]
-        if not any(fleet.varies[place] for place in places):
+        if places and not any(fleet.varies[place] for place in places):
             who = ", ".join(fleet.names[place] for place in places)
             what = f"control is by speed, but no pump has a speed range when these run: {who}"
             q.bad((*path, "control"), what, "speed_range of one of them, or another control")
