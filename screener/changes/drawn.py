@@ -12,10 +12,10 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from screener.header import system
-from screener.header.balance import balance, hold_each
+from screener.header.balance import balance
 from screener.header.branch import BranchCurves, flow_at
 from screener.header.branch import take as take_branches
-from screener.header.held import Varying
+from screener.header.held import Varying, hold
 from screener.header.setting import Setting, branches_at, pumps_at, ratio_at, setting_of, speed_limits
 from screener.model.arrays import Floats, Ints
 from screener.model.case import Branch, Case, Drive
@@ -220,7 +220,7 @@ def _held(drawn: _Drawn, column: int, without: int = -1) -> tuple[Floats, Floats
             wanted -= number[place] * flow[:, place]
     short, over = np.ones(count, bool), np.zeros(count, bool)
     if kinds:
-        found = hold_each(kinds, head=head, wanted=np.where(np.isnan(wanted), -np.inf, wanted))
+        found = hold(kinds, head=head, wanted=np.where(np.isnan(wanted), -np.inf, wanted))
         short, over = found.short, found.over
         for kind, place, given in zip(kinds, places, found.flow.T, strict=True):
             flow[:, place], ratio[:, place] = given, np.clip(found.ratio, kind.low, kind.high)

@@ -8,21 +8,18 @@ stretch) is left to a slow search over the header head, which cannot miss.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from screener.header import branch, system
 from screener.header.branch import BranchCurves
-from screener.header.held import Held, Varying
-from screener.header.setting import branches_at, pumps_at
+from screener.header.root import crossing
 from screener.header.system import SystemCurve
-from screener.hydraulics.similarity import take
 from screener.model.arrays import STATIONS, Bools, Floats, Ints
 
 _STEPS = 14
-_HALVINGS = 120
 _SLACK = 1e-9
 
 
@@ -208,12 +205,17 @@ def _once(network: _Network, rows: Ints, held: Bools) -> tuple[Floats, Floats, I
     rows, held = rows[work], held[:, work]
     low, high = limits[0][work], limits[1][work]
 
-    def spare(at: Floats, some: Ints) -> Floats:
+    def lacking(at: Floats, some: Ints) -> Floats:
         return np.asarray(
-            network.number @ network.supply(at, rows[some], held[:, some]) - network.users(at, rows[some])
+            network.users(at, rows[some]) - network.number @ network.supply(at, rows[some], held[:, some])
         )
 
-    low, high = _crossing(spare, low, high, 1e-14 * network.figures("end", rows).max(axis=0))
+    every = np.arange(len(rows))
+    ends, noise = (
+        (lacking(low, every), lacking(high, every)),
+        1e-14 * network.figures("end", rows).max(axis=0),
+    )
+    low, high = crossing(lacking, low, high, ends=ends, noise=noise)
     first, last = network.supply(low, rows, held), network.supply(high, rows, held)
     above = network.number @ first - network.users(low, rows)
     below = network.number @ last - network.users(high, rows)
@@ -293,69 +295,3 @@ def _tail(network: _Network, rows: Ints) -> Floats:
     """Slope with which the new pump is looked at past its end, (r,) [m per m3/s]."""
     tail, span = (network.figures(name, rows)[0] for name in ("tail", "span"))
     return np.asarray(tail * (STATIONS - 1) / span)
-
-
-def hold_each(kinds: Sequence[Varying], *, head: Floats, wanted: Floats) -> Held:
-    """As `hold`, with a header head of its own for each row.
-
-    kinds : k kinds of pumps;  head : (c,) [m] at the header;  wanted : (c,) [m3/s]
-    """
-    everyone = np.arange(len(wanted))
-    number = np.array([kind.number for kind in kinds])
-
-    def delivered(ratio: Floats, rows: Ints) -> Floats:
-        return np.stack([_at_speed(kind, ratio, rows, head[rows]) for kind in kinds], axis=1)
-
-    def lacking(ratio: Floats, rows: Ints) -> Floats:
-        flow = delivered(ratio, rows)
-        return np.asarray(wanted[rows] - np.where(np.isnan(flow), 0.0, flow) @ number)
-
-    low = np.min([np.broadcast_to(kind.low, len(wanted)) for kind in kinds], axis=0)
-    high = np.max([np.broadcast_to(kind.high, len(wanted)) for kind in kinds], axis=0)
-    short, over = lacking(high, everyone) > 0, lacking(low, everyone) < 0
-    below, above = _crossing(lacking, low, high, 1e-12 * np.maximum(wanted, 1e-3))
-    ratio = np.where(short, high, np.where(over, low, below))
-    flow = delivered(ratio, everyone)
-    gap = ~short & ~over & (np.abs(lacking(ratio, everyone)) > 1e-6 * np.maximum(wanted, 1e-6))
-    if gap.any():  # the flow jumps there: a curve ends, or has no falling side
-        rows = np.flatnonzero(gap)
-        flow[rows] = np.where(np.isinf(delivered(above[rows], rows)), np.inf, flow[rows])
-    return Held(ratio, np.where(np.isnan(flow), -np.inf, flow), short, over)
-
-
-def _at_speed(kind: Varying, ratio: Floats, rows: Ints, head: Floats) -> Floats:
-    """Flow delivered by one pump of a kind at a header head, (r,) [m3/s]; NaN left of its data."""
-    pumps = kind.pumps if len(kind.pumps) == 1 else take(kind.pumps, rows)
-    low, high = (limit if len(limit) == 1 else limit[rows] for limit in (kind.low, kind.high))
-    turned = pumps_at(pumps, ratio=np.clip(ratio, low, high), viscosity=kind.viscosity)
-    curves = branches_at(turned, [kind.branch], np.array([kind.bypass]))
-    flow = branch.flow_at(curves, np.arange(len(rows)), head)
-    return np.asarray(np.where(np.isnan(curves.low_head), np.nan, flow))
-
-
-def _crossing(
-    falling: Callable[[Floats, Ints], Floats], low: Floats, high: Floats, noise: Floats
-) -> tuple[Floats, Floats]:
-    """Where a falling function (of place and row) crosses zero, from the left and from the right, (c,) each.
-
-    Bisection and false position together. noise : (c,) values no larger than this are zero. Rows that do not
-    have zero between `low` and `high` come back as they were.
-    """
-    low, high, every = np.array(low), np.array(high), np.arange(len(low))
-    above, below = falling(low, every), falling(high, every)
-    rows = np.flatnonzero((above > 0) & (below < 0))
-    for step in range(_HALVINGS):
-        width = high[rows] - low[rows]
-        rows = rows[width > 4e-16 * np.maximum(np.abs(high[rows]), 1.0)]
-        if not rows.size:
-            break
-        with np.errstate(invalid="ignore"):
-            share = above[rows] / (above[rows] - below[rows])
-        share = np.where(np.isfinite(share) & (step % 3 != 2), np.clip(share, 1e-6, 1 - 1e-6), 0.5)
-        place = low[rows] + share * (high[rows] - low[rows])
-        value = falling(place, rows)
-        left, there = value >= 0, np.abs(value) <= noise[rows]
-        low[rows], above[rows] = np.where(left, place, low[rows]), np.where(left, value, above[rows] / 2)
-        high[rows], below[rows] = np.where(left, high[rows], place), np.where(left, below[rows] / 2, value)
-        low[rows[there]] = high[rows[there]] = place[there]
-    return low, high

@@ -11,7 +11,7 @@ import numpy as np
 import pytest
 
 from screener.header import balance as module
-from screener.header.balance import balance, hold_each
+from screener.header.balance import balance
 from screener.header.branch import BranchCurves, branch_curves, take
 from screener.header.held import Varying, hold
 from screener.header.left import flow_left, without_new
@@ -270,7 +270,7 @@ def test_speeds_as_held_one_by_one(kinds) -> None:
     factors = np.array([1.0, 0.97, 1.03, 1.0, 1.0, 1.02])
     head = np.array([30.0, 31.0, 29.0, 45.0, 10.0, 16.0])
     wanted = np.array([0.2, 0.15, 0.25, 0.3, 0.05, 0.3])
-    every = hold_each(kinds(factors), head=head, wanted=wanted)
+    every = hold(kinds(factors), head=head, wanted=wanted)
     assert every.short.any()
     assert every.over.any()
     assert np.isinf(every.flow).any()
