@@ -21,7 +21,7 @@ from screener.model.arrays import Floats, Ints
 from screener.model.case import Branch, Case, Drive
 from screener.model.curves import Pumps
 from screener.model.run import Kind, Run, Speed
-from screener.screening import evaluate
+from screener.screening.figures import Group, figures
 from screener.screening.header import Header
 from screener.screening.ratings import summits, thermal_power
 from screener.screening.states import curve_of
@@ -108,14 +108,14 @@ def run_each(header: Header, pumps: tuple[Pumps, ...], friction: Floats, starts:
     drawn = _Drawn(header, pumps, friction, {})
     head, flow, start_header, speeds = _solved(drawn, starts, {})
     base = drawn.at(header.base.setting)
-    result = evaluate.figures(
+    result = figures(
         header,
         pumps[0],
         header.case.new_pump.branch,
         _groups(drawn, speeds),
         flow,
         head,
-        evaluate.Fitted(base.pumps[0], base.branches[0], base.ratio[:, 0], float(base.bypass[0])),
+        base=(base.pumps[0], base.branches[0]),
     )
     unknown = np.full((len(friction), flow.shape[2]), np.nan)
     return replace(
@@ -236,9 +236,9 @@ def _held(drawn: _Drawn, column: int, without: int = -1) -> tuple[Floats, Floats
     return head, flow, ratio
 
 
-def _groups(drawn: _Drawn, speeds: Mapping[int, Floats]) -> list[evaluate.Group]:
+def _groups(drawn: _Drawn, speeds: Mapping[int, Floats]) -> list[Group]:
     """The states by what the pumps are like in them."""
-    found: dict[int, evaluate.Group] = {}
+    found: dict[int, Group] = {}
     result = []
     for column in range(len(drawn.header.states)):
         stand = drawn.stand(column)
@@ -252,7 +252,7 @@ def _groups(drawn: _Drawn, speeds: Mapping[int, Floats]) -> list[evaluate.Group]
                 pumps_at(pump, ratio=own, viscosity=viscosity)
                 for pump, own in zip(drawn.pumps, ratio.T, strict=True)
             )
-        group = evaluate.Group(
+        group = Group(
             [column],
             pumps,
             ratio,
