@@ -10,6 +10,7 @@ from textwrap import wrap
 from typing import Any
 
 from screener.errors import UsageError
+from screener.export import missing
 from screener.export._xlsx_charts import write_charts
 from screener.export._xlsx_tables import Named, complete, tables, unique
 from screener.export.clean import clean
@@ -57,12 +58,10 @@ def render(screen: Screen) -> bytes:
     import io
     from datetime import datetime
 
-    try:
-        import xlsxwriter
-    except ImportError as error:
-        raise UsageError(
-            "a workbook needs the extra 'report': pip install 'pump-header-screener[report]'"
-        ) from error
+    if needed := missing(NEEDS):
+        raise UsageError(f"a workbook {needed}")
+    import xlsxwriter
+
     out = io.BytesIO()
     words = {"strings_to_formulas": False, "strings_to_urls": False, "strings_to_numbers": False}
     book = xlsxwriter.Workbook(out, {"in_memory": True, **words})

@@ -321,11 +321,19 @@ def _percent(value: float) -> float | None:
     return tidy(100 * float(value)) if np.isfinite(value) else None
 
 
+def power_is(case: Case, *, new: bool = True) -> str:
+    """What powers are: "shaft", or "supply" where efficiencies of motor and drive are stated, or "mixed".
+
+    new : whether the new pump is among those that run
+    """
+    drives = [*([case.new_pump.drive] if new else []), *(pump.drive for pump in case.installed)]
+    stated = [drive.motor_efficiency * drive.drive_efficiency != 1 for drive in drives]
+    return "supply" if all(stated) else "mixed" if any(stated) else "shaft"
+
+
 def energy_words(case: Case) -> str:
     """What energies are: at the shafts, or drawn where the efficiency of a motor or drive is stated."""
-    drives = [case.new_pump.drive, *(pump.drive for pump in case.installed)]
-    stated = any(drive.motor_efficiency * drive.drive_efficiency != 1 for drive in drives)
-    return "energy drawn" if stated else "shaft energy"
+    return "shaft energy" if power_is(case) == "shaft" else "energy drawn"
 
 
 def trim_law_in_force(table: PumpTable) -> list[str]:

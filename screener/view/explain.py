@@ -20,7 +20,6 @@ from screener.view import liquids as view_liquids
 from screener.view import sampling as view_sampling
 from screener.view import speeds as view_speeds
 from screener.view.blocks import Block, Cell, Chart, Column, Heading, Lines, Screen, Table, Tone
-from screener.view.charts import load_share, pump, with_new
 from screener.view.data import Origin
 from screener.view.display import DASH, Display, percent, plain, word
 from screener.view.findings import NO_FIGURES, Found, found, unit_of
@@ -84,6 +83,8 @@ def screen(closer: Closer, origin: Origin) -> Screen:
 
 def _charts(result: Explained) -> list[Chart]:
     """The header with the pump, the pump by itself, and how the load is shared where that is known."""
+    from screener.view.charts import load_share, pump, with_new
+
     shares = load_share.chart(result)
     return [with_new.chart(result), pump.chart(result), *([shares] if shares else [])]
 

@@ -14,8 +14,7 @@ from screener.screening.today import HeaderReport
 from screener.view import data, names, requirement
 from screener.view import liquids as view_liquids
 from screener.view import speeds as view_speeds
-from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
-from screener.view.charts import today as today_chart
+from screener.view.blocks import Block, Cell, Chart, Column, Heading, Lines, Screen, Table, Tone
 from screener.view.data import Origin, head
 from screener.view.display import DASH, Display, percent, plain, word
 from screener.view.findings import Found, found
@@ -49,7 +48,14 @@ def screen(report: HeaderReport, origin: Origin) -> Screen:
         ]
     blocks.append(Lines(data.CAUTIONS, Tone.QUIET))
     content = _data(report, display, origin, already)
-    return Screen(blocks, table, content, charts=lambda: [today_chart.chart(report)])
+    return Screen(blocks, table, content, charts=lambda: _charts(report))
+
+
+def _charts(report: HeaderReport) -> list[Chart]:
+    """The chart of the header, made only when asked for."""
+    from screener.view.charts import today
+
+    return [today.chart(report)]
 
 
 def _liquid(bench: Bench) -> str:

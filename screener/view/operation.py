@@ -9,8 +9,7 @@ import numpy as np
 from screener.changes.combination import BREACHES, Ran
 from screener.changes.operation import Choice, Operation
 from screener.view import data, names, operating_map
-from screener.view.blocks import Block, Cell, Column, Heading, Lines, Screen, Table, Tone
-from screener.view.charts import operating_map as chart
+from screener.view.blocks import Block, Cell, Chart, Column, Heading, Lines, Screen, Table, Tone
 from screener.view.data import Origin
 from screener.view.display import DASH, Display, tidy, word
 
@@ -41,7 +40,14 @@ def screen(result: Operation, origin: Origin) -> Screen:
         Lines([OPERATOR, *data.CAUTIONS], Tone.QUIET),
     ]
     content = _data(result, display, origin)
-    return Screen(blocks, _flat(result, display), content, charts=lambda: [chart.chart(result)])
+    return Screen(blocks, _flat(result, display), content, charts=lambda: _charts(result))
+
+
+def _charts(result: Operation) -> list[Chart]:
+    """The operating map as a chart, made only when asked for."""
+    from screener.view.charts import operating_map as chart
+
+    return [chart.chart(result)]
 
 
 def _subject(result: Operation, display: Display) -> str:
@@ -65,12 +71,7 @@ def _power_means(result: Operation) -> str:
 
 
 def _power_kind(result: Operation) -> str:
-    case = result.bench.header.case
-    drives = [pump.drive for pump in case.installed]
-    if result.explained:
-        drives.append(case.new_pump.drive)
-    stated = [drive.motor_efficiency * drive.drive_efficiency != 1 for drive in drives]
-    return "supply" if all(stated) else "mixed" if any(stated) else "shaft"
+    return data.power_is(result.bench.header.case, new=bool(result.explained))
 
 
 def _together(result: Operation, ran: Ran | None) -> str:

@@ -13,7 +13,6 @@ from screener.screening.shortlist import RestoredAlone, Shortlist
 from screener.screening.today import naive
 from screener.view import data, names, requirement, why_not
 from screener.view.blocks import Block, Cell, Chart, Column, Heading, Lines, Screen, Table, Tone
-from screener.view.charts import trade_off
 from screener.view.data import Origin
 from screener.view.display import DASH, Display, percent, plain, tidy, word
 from screener.view.findings import found, sentence, worst_first
@@ -96,6 +95,8 @@ def _sheets(
 
 
 def _charts(result: Shortlist) -> list[Chart]:
+    from screener.view.charts import trade_off
+
     found = trade_off.chart(result)
     return [found] if found else []
 

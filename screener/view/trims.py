@@ -14,7 +14,6 @@ from screener.screening.judge import worst_criterion
 from screener.screening.one import Trims
 from screener.view import data, names
 from screener.view.blocks import Block, Cell, Chart, Column, Heading, Lines, Screen, Table, Tone
-from screener.view.charts import trims as chart
 from screener.view.data import Origin
 from screener.view.display import Display, percent, plain, word
 from screener.view.explain import VERDICT_TONES, passing
@@ -51,6 +50,8 @@ def screen(result: Trims, by_law: ByLaw, origin: Origin) -> Screen:
 
 
 def _charts(result: Trims) -> list[Chart]:
+    from screener.view.charts import trims as chart
+
     found = chart.chart(result)
     return [found] if found else []
 
